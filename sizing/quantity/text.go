@@ -1,0 +1,270 @@
+package quantity
+
+import (
+	"errors"
+	"fmt"
+	"math/big"
+	"math/bits"
+	"strconv"
+	"strings"
+)
+
+// Limits of a written number. They keep a hostile document from asking for
+// gigabytes of digits; no datasheet comes near them.
+const (
+	MaxDigits   = 40
+	MaxExponent = 30
+)
+
+// ErrTooLong is returned by [Parse] for a number beyond [MaxDigits] or [MaxExponent].
+var ErrTooLong = fmt.Errorf("more than %d digits or an exponent beyond ±%d", MaxDigits, MaxExponent)
+
+// ErrNotNumber is returned by [Parse] for text that is no decimal number.
+var ErrNotNumber = errors.New("not a decimal number")
+
+// Parse reads a decimal number as JSON (RFC 8259, section 6) writes it:
+// an optional minus, digits without a leading zero, an optional fraction and
+// exponent. The value is exact.
+func Parse(s string) (Exact, error) {
+	i, negative := 0, false
+	if i < len(s) && s[i] == '-' {
+		negative = true
+		i++
+	}
+	whole := digitRun(s[i:])
+	if whole == 0 || whole > 1 && s[i] == '0' {
+		return Exact{}, ErrNotNumber
+	}
+	wholeDigits := s[i : i+whole]
+	i += whole
+	fraction := ""
+	if i < len(s) && s[i] == '.' {
+		n := digitRun(s[i+1:])
+		if n == 0 {
+			return Exact{}, ErrNotNumber
+		}
+		fraction = s[i+1 : i+1+n]
+		i += 1 + n
+	}
+	exponent := 0
+	if i < len(s) && (s[i] == 'e' || s[i] == 'E') {
+		e := strings.TrimPrefix(s[i+1:], "+")
+		d := strings.TrimPrefix(e, "-")
+		if d == "" || digitRun(d) != len(d) || strings.HasPrefix(s[i+1:], "+-") {
+			return Exact{}, ErrNotNumber
+		}
+		n, err := strconv.Atoi(e)
+		if err != nil || n > MaxExponent || n < -MaxExponent {
+			return Exact{}, ErrTooLong
+		}
+		exponent = n
+		i = len(s)
+	}
+	if i != len(s) {
+		return Exact{}, ErrNotNumber
+	}
+	if len(wholeDigits)+len(fraction) > MaxDigits {
+		return Exact{}, ErrTooLong
+	}
+	x := scaled(wholeDigits, fraction, exponent)
+	if negative {
+		x = x.Neg()
+	}
+	return x, nil
+}
+
+func digitRun(s string) int {
+	n := 0
+	for n < len(s) && '0' <= s[n] && s[n] <= '9' {
+		n++
+	}
+	return n
+}
+
+func scaled(whole, fraction string, exponent int) Exact {
+	places := len(fraction) - exponent
+	if len(whole)+len(fraction) <= 18 && 0 <= places && places <= 18 {
+		n, _ := strconv.ParseInt(whole, 10, 64)
+		for i := range len(fraction) {
+			n = n*10 + int64(fraction[i]-'0')
+		}
+		return Exact{num: n, den: pow10[places]}
+	}
+	n, _ := new(big.Int).SetString(whole+fraction, 10)
+	r := new(big.Rat).SetInt(n)
+	scale := new(big.Rat).SetInt(bigPow10(abs(places)))
+	if places >= 0 {
+		return fromRat(r.Quo(r, scale))
+	}
+	return fromRat(r.Mul(r, scale))
+}
+
+var pow10 = func() (p [19]int64) {
+	p[0] = 1
+	for i := 1; i < len(p); i++ {
+		p[i] = p[i-1] * 10
+	}
+	return p
+}()
+
+func abs(n int) int {
+	if n < 0 {
+		return -n
+	}
+	return n
+}
+
+func bigPow10(n int) *big.Int { return new(big.Int).Exp(big.NewInt(10), big.NewInt(int64(n)), nil) }
+
+// Decimal reports the decimal places x needs to be written in full, and whether
+// it can be: 1/3 cannot.
+func (x Exact) Decimal() (places int, finite bool) {
+	if x.big != nil {
+		return x.big.FloatPrec()
+	}
+	places, finite = smallPlaces(x.d())
+	if !finite || places > 0 {
+		// Unreduced fractions may carry factors that cancel.
+		return smallPlaces(x.reduced().d())
+	}
+	return places, finite
+}
+
+func smallPlaces(d int64) (int, bool) {
+	twos := bits.TrailingZeros64(uint64(d))
+	d >>= twos
+	fives := 0
+	for d%5 == 0 {
+		d /= 5
+		fives++
+	}
+	return max(twos, fives), d == 1
+}
+
+// SignificantDigits is how many digits a number that has no finite decimal is given.
+const SignificantDigits = 12
+
+// AppendJSON appends x as a JSON number: a finite decimal in full, any other
+// number rounded to [SignificantDigits], halves away from zero.
+func (x Exact) AppendJSON(dst []byte) []byte {
+	places, finite := x.Decimal()
+	if !finite {
+		places = x.placesFor(SignificantDigits)
+	}
+	return x.appendRounded(dst, places, Nearest, finite)
+}
+
+// String returns the text of [Exact.AppendJSON].
+func (x Exact) String() string { return string(x.AppendJSON(nil)) }
+
+// placesFor returns how many decimal places show n significant digits of x; negative to the left of the point.
+func (x Exact) placesFor(n int) int {
+	if x.IsZero() {
+		return 0
+	}
+	r := x.rat()
+	num, den := new(big.Int).Abs(r.Num()), r.Denom()
+	// The decimal exponent from the lengths is right or one too large.
+	e := len(num.String()) - len(den.String())
+	scaledNum, scaledDen := num, den
+	if e >= 0 {
+		scaledDen = new(big.Int).Mul(den, bigPow10(e))
+	} else {
+		scaledNum = new(big.Int).Mul(num, bigPow10(-e))
+	}
+	if scaledNum.Cmp(scaledDen) < 0 {
+		e--
+	}
+	return n - 1 - e
+}
+
+// Direction says how a number is rounded when it is shown with fewer digits than it has.
+type Direction uint8
+
+const (
+	Nearest Direction = iota // halves away from zero
+	Up                       // towards +∞: for a maximum, so that none looks lower than it is
+	Down                     // towards −∞: for a minimum, so that none looks higher than it is
+)
+
+// Fixed returns x with exactly places decimals (0 to 100), rounded in the given
+// direction, with an ASCII minus, and whether the text is x itself.
+func (x Exact) Fixed(places int, dir Direction) (text string, exact bool) {
+	text = string(x.appendRounded(nil, places, dir, false))
+	n, finite := x.Decimal()
+	return text, finite && n <= places
+}
+
+// appendRounded appends x rounded to places decimals; places may be negative. A
+// result of −0 is written 0. If known, x is known to need no rounding.
+func (x Exact) appendRounded(dst []byte, places int, dir Direction, known bool) []byte {
+	if x.big == nil && 0 <= places && places <= 18 {
+		d := x.d()
+		if n, ok := mul64(x.num, pow10[places]); ok {
+			q, rem := n/d, n%d
+			if rem != 0 && !known {
+				q += step(dir, rem < 0, cmpHalf(abs64(rem), uint64(d)))
+			}
+			return appendPlaced(dst, q < 0, strconv.AppendUint(nil, abs64(q), 10), places)
+		}
+	}
+	r := x.rat()
+	n, d := new(big.Int).Set(r.Num()), new(big.Int).Set(r.Denom())
+	if places >= 0 {
+		n.Mul(n, bigPow10(places))
+	} else {
+		d.Mul(d, bigPow10(-places))
+	}
+	q, rem := new(big.Int).QuoRem(n, d, new(big.Int))
+	if rem.Sign() != 0 {
+		twice := new(big.Int).Abs(rem)
+		half := twice.Lsh(twice, 1).Cmp(d)
+		q.Add(q, big.NewInt(step(dir, rem.Sign() < 0, half)))
+	}
+	if places < 0 {
+		q.Mul(q, bigPow10(-places))
+		places = 0
+	}
+	return appendPlaced(dst, q.Sign() < 0, new(big.Int).Abs(q).Append(nil, 10), places)
+}
+
+// step returns what to add to a quotient truncated towards zero.
+func step(dir Direction, negative bool, half int) int64 {
+	switch {
+	case dir == Up && !negative:
+		return 1
+	case dir == Down && negative:
+		return -1
+	case dir == Nearest && half >= 0:
+		if negative {
+			return -1
+		}
+		return 1
+	}
+	return 0
+}
+
+func cmpHalf(rem, d uint64) int {
+	switch other := d - rem; {
+	case rem > other:
+		return 1
+	case rem < other:
+		return -1
+	}
+	return 0
+}
+
+func appendPlaced(dst []byte, negative bool, digits []byte, places int) []byte {
+	if negative {
+		dst = append(dst, '-')
+	}
+	if lead := places + 1 - len(digits); lead > 0 {
+		digits = append([]byte(strings.Repeat("0", lead)), digits...)
+	}
+	dst = append(dst, digits[:len(digits)-places]...)
+	if places > 0 {
+		dst = append(dst, '.')
+		dst = append(dst, digits[len(digits)-places:]...)
+	}
+	return dst
+}
