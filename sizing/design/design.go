@@ -203,7 +203,8 @@ type Plane struct {
 
 // Allowances are margins that the designer adds. nil is not stated: 0, 0 and 3 °C.
 type Allowances struct {
-	HotVoltagePct, ColdVoltagePct, HeadroomC *quantity.Exact
+	HotVoltagePct, ColdVoltagePct *quantity.Exact
+	HeadroomC                     *Difference // headroom_c
 }
 
 // OtherLimit is another rated part in the DC circuit.
