@@ -1,0 +1,68 @@
+package server
+
+import (
+	"encoding/json"
+	"fmt"
+	"mime"
+	"net/http"
+	"slices"
+	"strconv"
+	"strings"
+
+	"rimeline/sizing"
+	"rimeline/sizing/design"
+)
+
+// apiSize answers one design with its result, whatever the verdict.
+func (s *Server) apiSize(w http.ResponseWriter, r *http.Request) error {
+	if err := requireJSON(r); err != nil {
+		return err
+	}
+	doc := design.Read(visitOf(r).body)
+	if doc.Design == nil {
+		status, detail := http.StatusUnprocessableEntity, "The design was refused; errors lists every reason."
+		if doc.Malformed {
+			status, detail = http.StatusBadRequest, "What was sent is not JSON."
+		}
+		errors, err := json.Marshal(doc.Faults)
+		if err != nil {
+			return err
+		}
+		writeProblem(w, problem{Status: status, Detail: detail, RequestID: visitOf(r).requestID, Errors: errors})
+		return nil
+	}
+	body := append(sizing.Size(doc.Design).AppendJSON(nil), '\n')
+	w.Header().Set("Content-Type", "application/json")
+	w.Header().Set("Cache-Control", "no-store")
+	w.Header().Set("Content-Length", strconv.Itoa(len(body)))
+	_, _ = w.Write(body)
+	return nil
+}
+
+// unlabelled are the content types that clients put on a body which they know
+// nothing about. They do not say that it is something else than JSON.
+var unlabelled = []string{"", "application/x-www-form-urlencoded", "application/octet-stream", "text/plain"}
+
+// requireJSON refuses a body that calls itself something else than JSON.
+func requireJSON(r *http.Request) error {
+	header := r.Header.Get("Content-Type")
+	kind, _, err := mime.ParseMediaType(header)
+	if header == "" {
+		kind, err = "", nil
+	}
+	isJSON := kind == "application/json" || kind == "text/json" || strings.HasPrefix(kind, "application/") && strings.HasSuffix(kind, "+json")
+	if err != nil || !isJSON && !slices.Contains(unlabelled, kind) {
+		return &statusError{
+			status:  http.StatusUnsupportedMediaType,
+			message: fmt.Sprintf("The body calls itself %q; a design is sent as application/json.", header),
+		}
+	}
+	if encoding := r.Header.Get("Content-Encoding"); encoding != "" && !strings.EqualFold(encoding, "identity") {
+		return &statusError{
+			status:  http.StatusUnsupportedMediaType,
+			message: fmt.Sprintf("The body is encoded as %q; a design is sent as it is.", encoding),
+			header:  map[string]string{"Accept-Encoding": "identity"},
+		}
+	}
+	return nil
+}

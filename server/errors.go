@@ -1,0 +1,145 @@
+package server
+
+import (
+	"context"
+	"encoding/json"
+	"errors"
+	"fmt"
+	"html"
+	"net/http"
+	"strconv"
+	"strings"
+
+	"github.com/go-chi/chi/v5"
+)
+
+// statusError is an error that knows its status and what the visitor may read.
+type statusError struct {
+	status  int
+	message string            // sentences for the visitor; nothing of the program's inside
+	cause   error             // for the log; nil if the message says it all
+	header  map[string]string // further headers of the answer
+}
+
+func (e *statusError) Error() string {
+	if e.cause != nil {
+		return fmt.Sprintf("%d: %v", e.status, e.cause)
+	}
+	return fmt.Sprintf("%d: %s", e.status, e.message)
+}
+
+func (e *statusError) Unwrap() error { return e.cause }
+
+var errNotFound = &statusError{status: http.StatusNotFound, message: "There is no page at this address."}
+
+// badRequest is a request that cannot be read.
+func badRequest(message string, cause error) error {
+	return &statusError{status: http.StatusBadRequest, message: message, cause: cause}
+}
+
+// methodNotAllowed refuses the method of a request and names those that the address takes.
+func methodNotAllowed(routes chi.Routes) handler {
+	return func(_ http.ResponseWriter, r *http.Request) error {
+		var allowed []string
+		for _, method := range []string{http.MethodGet, http.MethodHead, http.MethodPost} {
+			tried := method
+			if tried == http.MethodHead {
+				tried = http.MethodGet // GetHead answers HEAD wherever there is a GET
+			}
+			if routes.Match(chi.NewRouteContext(), tried, r.URL.Path) {
+				allowed = append(allowed, method)
+			}
+		}
+		allow := strings.Join(allowed, ", ")
+		return &statusError{
+			status:  http.StatusMethodNotAllowed,
+			message: fmt.Sprintf("This address does not take %s. It takes %s.", r.Method, allow),
+			header:  map[string]string{"Allow": allow},
+		}
+	}
+}
+
+// statusClientGone is what the log calls a request whose client did not wait for the answer.
+const statusClientGone = 499
+
+// describe says which status an error has and what the visitor is told of it.
+func describe(err error) (status int, message string, header map[string]string) {
+	if e, ok := errors.AsType[*statusError](err); ok {
+		return e.status, e.message, e.header
+	}
+	if errors.Is(err, context.Canceled) {
+		return statusClientGone, "The request was given up.", nil
+	}
+	return http.StatusInternalServerError,
+		"Something failed on our side. Nothing that you typed was judged; please try again.", nil
+}
+
+// serveError is the only place where an error becomes an answer: it chooses the
+// status, logs the error and shows the visitor a message and the request's id. The
+// text of an error that was not meant for visitors stays in the log.
+func (s *Server) serveError(w http.ResponseWriter, r *http.Request, err error) {
+	status, message, header := describe(err)
+	id := visitOf(r).requestID
+	log := s.log.InfoContext
+	if status >= http.StatusInternalServerError {
+		log = s.log.ErrorContext
+	}
+	log(r.Context(), "request refused or failed", "request_id", id, "status", status, "error", err)
+
+	if rec, ok := w.(*recorder); ok && rec.status != 0 {
+		s.log.ErrorContext(r.Context(), "a handler answered and returned an error", "request_id", id)
+		return
+	}
+	for name, value := range header {
+		w.Header().Set(name, value)
+	}
+	w.Header().Set("Cache-Control", "no-store")
+	if strings.HasPrefix(r.URL.Path, "/api/") {
+		writeProblem(w, problem{Status: status, Detail: message, RequestID: id})
+		return
+	}
+	body := plainErrorPage(status, message, id)
+	w.Header().Set("Content-Type", "text/html; charset=utf-8")
+	w.Header().Set("Content-Length", strconv.Itoa(len(body)))
+	w.WriteHeader(status)
+	_, _ = w.Write([]byte(body))
+}
+
+// plainErrorPage needs nothing that can fail.
+func plainErrorPage(status int, message, id string) string {
+	title := statusTitle(status)
+	return `<!doctype html><html lang="en"><head><meta charset="utf-8"><meta name="viewport" content="width=device-width">` +
+		`<title>` + title + ` – Rimeline</title></head><body><main><h1>` + title + `</h1><p>` + html.EscapeString(message) +
+		`</p><p>Request ` + html.EscapeString(id) + `</p><p><a href="/">To the start</a></p></main></body></html>`
+}
+
+func statusTitle(status int) string {
+	if status == statusClientGone {
+		return "Given up"
+	}
+	return http.StatusText(status)
+}
+
+// problem is an error of the JSON interface (RFC 9457). Its type is about:blank:
+// the status says which kind it is, errors say the rest.
+type problem struct {
+	Type      string          `json:"type"`
+	Title     string          `json:"title"`
+	Status    int             `json:"status"`
+	Detail    string          `json:"detail"`
+	RequestID string          `json:"request_id,omitempty"`
+	Errors    json.RawMessage `json:"errors,omitempty"` // the faults of a refused document
+}
+
+func writeProblem(w http.ResponseWriter, p problem) {
+	p.Type, p.Title = "about:blank", statusTitle(p.Status)
+	body, err := json.Marshal(p)
+	if err != nil { // only Errors could be at fault; the rest still says what happened
+		p.Errors = nil
+		body, _ = json.Marshal(p)
+	}
+	w.Header().Set("Content-Type", "application/problem+json")
+	w.Header().Set("Content-Length", strconv.Itoa(len(body)))
+	w.WriteHeader(p.Status)
+	_, _ = w.Write(body)
+}

@@ -1,0 +1,37 @@
+package server
+
+import (
+	"net/http"
+
+	"github.com/go-chi/chi/v5"
+	"github.com/go-chi/chi/v5/middleware"
+)
+
+// routes is every route of the site, and what each request passes on its way.
+// GET changes nothing: the guard against cross-site requests rests on it.
+func (s *Server) routes() chi.Router {
+	r := chi.NewRouter()
+	r.Use(s.logRequests, s.recoverPanic, securityHeaders, s.onlyOwnHosts, s.onlySameOrigin, middleware.GetHead)
+	r.NotFound(s.handle(func(http.ResponseWriter, *http.Request) error { return errNotFound }))
+	r.MethodNotAllowed(s.handle(methodNotAllowed(r)))
+
+	r.Get("/healthz", s.handle(s.health))
+	r.With(compress).Get("/static/{file}", s.handle(s.staticFile))
+
+	r.Group(func(r chi.Router) {
+		r.Use(s.readBody, s.takePlace, compress)
+
+		r.Get("/", s.handle(s.showStart))
+		r.Get("/design", s.handle(s.showDesign))
+		r.Get("/example", s.handle(s.showExample))
+		r.Post("/design", s.handle(s.sizeDesign))          // the whole page, with the answer
+		r.Post("/design/answer", s.handle(s.renewAnswer))  // the answer alone, for the script
+		r.Post("/design/working", s.handle(s.showWorking)) // the whole arithmetic
+		r.Post("/design/sheet", s.handle(s.showSheet))     // the stringing sheet
+		r.Post("/design/file", s.handle(s.saveFile))       // the design as a file to keep
+		r.Post("/design/open", s.handle(s.openFile))       // such a file, back into the form
+
+		r.Post("/api/v1/size", s.handle(s.apiSize))
+	})
+	return r
+}
