@@ -1,7 +1,6 @@
 package server
 
 import (
-	"encoding/json"
 	"fmt"
 	"mime"
 	"net/http"
@@ -24,11 +23,11 @@ func (s *Server) apiSize(w http.ResponseWriter, r *http.Request) error {
 		if doc.Malformed {
 			status, detail = http.StatusBadRequest, "What was sent is not JSON."
 		}
-		errors, err := json.Marshal(doc.Faults)
-		if err != nil {
-			return err
+		p := problem{Status: status, Detail: detail, RequestID: visitOf(r).requestID}
+		for _, f := range doc.Faults {
+			p.Errors = append(p.Errors, problemFault(f))
 		}
-		writeProblem(w, problem{Status: status, Detail: detail, RequestID: visitOf(r).requestID, Errors: errors})
+		writeProblem(w, p)
 		return nil
 	}
 	body := append(sizing.Size(doc.Design).AppendJSON(nil), '\n')

@@ -1,6 +1,7 @@
 package server
 
 import (
+	"bytes"
 	"context"
 	"encoding/json"
 	"errors"
@@ -123,23 +124,33 @@ func statusTitle(status int) string {
 // problem is an error of the JSON interface (RFC 9457). Its type is about:blank:
 // the status says which kind it is, errors say the rest.
 type problem struct {
-	Type      string          `json:"type"`
-	Title     string          `json:"title"`
-	Status    int             `json:"status"`
-	Detail    string          `json:"detail"`
-	RequestID string          `json:"request_id,omitempty"`
-	Errors    json.RawMessage `json:"errors,omitempty"` // the faults of a refused document
+	Type      string         `json:"type"`
+	Title     string         `json:"title"`
+	Status    int            `json:"status"`
+	Detail    string         `json:"detail"`
+	RequestID string         `json:"request_id,omitempty"`
+	Errors    []problemFault `json:"errors,omitempty"` // every reason why a document is refused
+}
+
+// problemFault is a [design.Fault] as it is sent.
+type problemFault struct {
+	Pointer  string `json:"pointer"`
+	Found    string `json:"found"`
+	Expected string `json:"expected"`
+	Detail   string `json:"detail"`
 }
 
 func writeProblem(w http.ResponseWriter, p problem) {
 	p.Type, p.Title = "about:blank", statusTitle(p.Status)
-	body, err := json.Marshal(p)
-	if err != nil { // only Errors could be at fault; the rest still says what happened
-		p.Errors = nil
-		body, _ = json.Marshal(p)
+	var body bytes.Buffer
+	enc := json.NewEncoder(&body)
+	enc.SetEscapeHTML(false) // the faults quote what was found
+	if err := enc.Encode(p); err != nil {
+		panic(err) // texts and an int are always encoded
 	}
 	w.Header().Set("Content-Type", "application/problem+json")
-	w.Header().Set("Content-Length", strconv.Itoa(len(body)))
+	w.Header().Set("Cache-Control", "no-store")
+	w.Header().Set("Content-Length", strconv.Itoa(body.Len()))
 	w.WriteHeader(p.Status)
-	_, _ = w.Write(body)
+	_, _ = w.Write(body.Bytes())
 }

@@ -1,0 +1,89 @@
+package main
+
+import (
+	"bufio"
+	"bytes"
+	"encoding/json"
+	"fmt"
+	"io"
+	"os"
+
+	"rimeline/sizing"
+	"rimeline/sizing/design"
+	"rimeline/sizing/working"
+)
+
+// sizeFile is the command "size": it prints one result, or one refusal, a line for
+// each design in the file.
+func sizeFile(args []string, stdin io.Reader, stdout, stderr io.Writer) int {
+	if len(args) != 1 || isFlag(args[0]) {
+		fmt.Fprintln(stderr, `rimeline: size takes one file, or "-" for standard input: rimeline size FILE`)
+		return exitRefused
+	}
+	input, err := readInput(args[0], stdin)
+	if err != nil {
+		fmt.Fprintln(stderr, "rimeline:", err)
+		return exitRefused
+	}
+	out := bufio.NewWriter(stdout)
+	status := exitFits
+	for i, doc := range design.ReadAll(input) {
+		line, one := sizeDocument(i+1, doc)
+		status = max(status, one)
+		_, _ = out.Write(line) // Flush tells
+		if one == exitRefused {
+			_, _ = stderr.Write(line)
+		}
+	}
+	if err := out.Flush(); err != nil {
+		fmt.Fprintln(stderr, "rimeline: the results could not be written:", err)
+		return exitRefused
+	}
+	return status
+}
+
+func readInput(name string, stdin io.Reader) ([]byte, error) {
+	if name == "-" {
+		return io.ReadAll(stdin)
+	}
+	return os.ReadFile(name)
+}
+
+// sizeDocument returns the line that answers the k-th document of an input, counted
+// from 1, and the exit status that it asks for.
+func sizeDocument(k int, doc design.Document) ([]byte, int) {
+	if doc.Design == nil {
+		return refusalLine(k, doc.Faults), exitRefused
+	}
+	result := sizing.Size(doc.Design)
+	status := exitFits
+	if result.Verdict >= working.Unconfirmed {
+		status = exitDoubt
+	}
+	return append(result.AppendJSON(nil), '\n'), status
+}
+
+// refusalLine is what stands in the place of a result for a refused document.
+func refusalLine(k int, faults design.Faults) []byte {
+	type fault struct {
+		Pointer  string `json:"pointer"`
+		Found    string `json:"found"`
+		Expected string `json:"expected"`
+		Detail   string `json:"detail"`
+	}
+	refusal := struct {
+		Format   string  `json:"format"`
+		Document int     `json:"document"`
+		Errors   []fault `json:"errors"`
+	}{"rimeline-refusal/1", k, []fault{}}
+	for _, f := range faults {
+		refusal.Errors = append(refusal.Errors, fault(f))
+	}
+	var line bytes.Buffer
+	enc := json.NewEncoder(&line)
+	enc.SetEscapeHTML(false)
+	if err := enc.Encode(refusal); err != nil {
+		panic(err) // texts and an int are always encoded
+	}
+	return line.Bytes()
+}
