@@ -77,8 +77,10 @@ func (s *Server) recoverPanic(next http.Handler) http.Handler {
 			if p == http.ErrAbortHandler {
 				panic(p) // net/http's own way to drop a connection
 			}
+			rec, ok := w.(*recorder)
+			begun := ok && rec.status != 0
 			s.serveError(w, r, fmt.Errorf("panic: %v\n%s", p, debug.Stack()))
-			if rec, ok := w.(*recorder); ok && rec.bytes > 0 && rec.status < http.StatusInternalServerError {
+			if begun {
 				panic(http.ErrAbortHandler) // the client must not take half an answer for a whole one
 			}
 		}()
