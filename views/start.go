@@ -1,0 +1,7 @@
+package views
+
+// StartPage is the first page of the site.
+type StartPage struct {
+	Base     Base
+	Cautions []Caution
+}
