@@ -1,0 +1,160 @@
+// Package stringing holds the rules of the main job, a file a rule: how cold and
+// hot move a module's voltage, what the ceiling is made of, how many modules go in
+// series and strings in parallel, and what is judged of the strings as wired.
+//
+// A rule returns its numbers together with the steps that show them and the
+// conditions at which its verdict turns. The package knows the document's words and
+// the rulebook's data; it must not know how results are ordered, written or shown.
+//
+// Hard ideas, once:
+//   - Voltages are exact; a limit that is met exactly is kept.
+//   - The cold side rests on open-circuit voltage at the lowest ambient
+//     temperature: at first light a cell is as cold as the air and carries no load.
+//   - The hot side rests on operating voltage at cell temperature, ambient plus the
+//     rise of the mounting.
+//   - Voltage adds along a string and does not add across parallel strings; current
+//     is the other way round.
+package stringing
+
+import (
+	"rimeline/sizing/design"
+	"rimeline/sizing/quantity"
+	"rimeline/sizing/rulebook"
+	"rimeline/sizing/working"
+)
+
+// Array is a design with the terms that several rules share. It is used by one
+// goroutine at a time.
+type Array struct {
+	Design *design.Design
+	Book   *rulebook.Book
+	terms  *design.Terms
+	doubts [][]design.Doubt // by module
+	planes []plane
+	wired  []entry
+}
+
+// entry is a strings entry with its places found and its voltages.
+type entry struct {
+	*design.StringEntry
+	index                    int
+	inverter, tracker, plane int
+	terms                    design.StringTerms
+	vocCold                  *working.Term // V, the string's
+}
+
+// NewArray prepares a design that has passed the reader. The rulebook must exist.
+func NewArray(d *design.Design) *Array {
+	a := &Array{
+		Design: d,
+		Book:   rulebook.Find(d.Rulebook),
+		terms:  design.NewTerms(d),
+		doubts: make([][]design.Doubt, len(d.Modules)),
+		planes: make([]plane, len(d.Planes)),
+		wired:  make([]entry, len(d.Strings)),
+	}
+	for i := range d.Modules {
+		a.doubts[i] = design.Doubts(d, a.terms, i)
+	}
+	for i := range d.Planes {
+		a.planes[i] = a.newPlane(i)
+	}
+	for i := range d.Strings {
+		s := &d.Strings[i]
+		e := entry{StringEntry: s, index: i, terms: a.terms.Strings[i]}
+		for k := range d.Inverters {
+			if d.Inverters[k].ID == s.Inverter {
+				e.inverter = k
+			}
+		}
+		for k := range d.Inverters[e.inverter].Trackers {
+			if d.Inverters[e.inverter].Trackers[k].ID == s.Tracker {
+				e.tracker = k
+			}
+		}
+		for k := range d.Planes {
+			if d.Planes[k].ID == s.Plane {
+				e.plane = k
+			}
+		}
+		e.vocCold = working.Named("Vcold", "V", e.terms.Series.Times(a.planes[e.plane].vocCold))
+		a.wired[i] = e
+	}
+	return a
+}
+
+func (a *Array) trackerOf(e *entry) (*design.Tracker, *design.TrackerTerms) {
+	return &a.Design.Inverters[e.inverter].Trackers[e.tracker], &a.terms.Inverters[e.inverter].Trackers[e.tracker]
+}
+
+// Questions returns the open questions, module by module.
+func (a *Array) Questions() []working.Question {
+	var open []working.Question
+	for _, doubts := range a.doubts {
+		for i := range doubts {
+			if doubts[i].Open() {
+				open = append(open, doubts[i].Question())
+			}
+		}
+	}
+	return open
+}
+
+// doubtRules returns the rules by which open questions about a plane's module keep
+// a check from being confirmed. A doubt that an answer closed is not among them.
+func (a *Array) doubtRules(rules []working.Rule, plane int, check string) []working.Rule {
+	module := a.planes[plane].module
+	for i := range a.doubts[module] {
+		doubt := &a.doubts[module][i]
+		if doubt.Answered || !contains(doubt.UnsafeFor, check) {
+			continue
+		}
+		for _, c := range doubt.Conditions {
+			rules = append(rules, working.Rule{
+				Broken:  []*working.Condition{c},
+				Verdict: working.Unconfirmed,
+				Reason:  working.Reason{Code: "open-question", Pointer: doubt.Pointer},
+			})
+		}
+	}
+	return rules
+}
+
+func contains(ids []string, id string) bool {
+	for _, x := range ids {
+		if x == id {
+			return true
+		}
+	}
+	return false
+}
+
+// judged completes a check with the verdict, reasons and turning points of its rules.
+func judged(c working.Check, rules []working.Rule) working.Check {
+	c.Verdict, c.Reasons = working.Judge(rules)
+	c.Turns = working.Turns(rules)
+	return c
+}
+
+func rule(verdict working.Verdict, reason string, broken ...*working.Condition) working.Rule {
+	return working.Rule{Broken: broken, Verdict: verdict, Reason: working.Reason{Code: reason}}
+}
+
+// shown returns the steps of named terms in order; a nil term or one without a
+// formula of its own has none.
+func shown(terms ...*working.Term) []working.Step {
+	steps := make([]working.Step, 0, len(terms))
+	for _, t := range terms {
+		if t != nil && t.IsNamed() {
+			steps = append(steps, t.Step())
+		}
+	}
+	return steps
+}
+
+func valueOf(t *working.Term) *quantity.Exact { return new(t.Value()) }
+
+func aboutString(e *entry) working.About { return working.About{String: e.index} }
+
+// Wired returns how many strings entries there are.
+func (a *Array) Wired() int { return len(a.wired) }

@@ -1,0 +1,122 @@
+package stringing
+
+import (
+	"rimeline/sizing/quantity"
+	"rimeline/sizing/working"
+)
+
+// backFeed judges what can flow backwards into one string of an entry when it
+// fails: the maximum current of every other string on the tracker, and what the
+// inverter feeds back, against the module's maximum series fuse rating. Where that
+// is exceeded each string needs an overcurrent device of at least 1.5625 × Isc and
+// at most the module's rating. NEC 690.9(A), (B); IEC 62548-1. The conductor's side
+// of the same test is not judged here.
+func (a *Array) backFeed(e *entry, t *Tracker) working.Check {
+	v := &a.planes[e.plane]
+	k := &a.terms.Inverters[t.inverter].Trackers[t.tracker]
+	sum, steps := a.backFeedSum(e, t)
+	check := working.Check{
+		ID: "back-feed", About: aboutString(e), Value: valueOf(sum), Unit: "A",
+		Cites: []string{a.Book.FuseRequired.Cite, a.Book.FuseFactor.Clause.Cite, a.Book.RatingsClause.Cite},
+	}
+	limit := v.terms.MaxSeriesFuse
+	least := working.Named("Ifuse,min", "A", working.Number(a.Book.FuseFactor.Value).Times(v.isc))
+	check.Steps = shownOnce(append([]*working.Term{named(v.isc), least}, steps...), "Imp,gain", sum)
+
+	var rules []working.Rule
+	if limit == nil {
+		rules = append(rules, rule(working.Unconfirmed, "series-fuse-not-stated", working.Exceeds(sum, working.Whole(0))))
+	} else {
+		check.Limit = valueOf(limit)
+		required := working.Exceeds(sum, limit)
+		if k.StringFuse != nil {
+			rules = append(rules,
+				rule(working.Outside, "string-fuse-too-small", required, working.Exceeds(least, k.StringFuse)),
+				rule(working.Outside, "string-fuse-above-module", required, working.Exceeds(k.StringFuse, limit)))
+		} else {
+			rules = append(rules,
+				rule(working.Unconfirmed, "fuse-required-none-stated", required),
+				rule(working.Outside, "no-standard-fuse", required, a.noRating(least, limit)))
+		}
+	}
+	check = judged(check, a.doubtRules(rules, e.plane, check.ID))
+	if sum.Value().IsZero() {
+		check.Reasons = append(check.Reasons, working.Reason{Code: "not-needed"})
+	}
+	return check
+}
+
+// backFeedSum returns the current that can flow backwards into one string of the entry.
+func (a *Array) backFeedSum(e *entry, t *Tracker) (*working.Term, []*working.Term) {
+	var steps []*working.Term
+	var all *working.Term
+	add := func(x *working.Term) {
+		if all == nil {
+			all = x
+		} else {
+			all = all.Plus(x)
+		}
+	}
+	for _, other := range t.entries {
+		v := &a.planes[other.plane]
+		steps = append(steps, named(v.isc))
+		strings := other.terms.Parallel
+		if other == e {
+			strings = strings.Minus(working.Whole(1))
+		}
+		add(a.maximumEach(v).Times(strings))
+	}
+	if back := a.terms.Inverters[t.inverter].BackFeed; back != nil {
+		add(back)
+	}
+	return working.Named("Iback-feed", "A", all), steps
+}
+
+// noRating returns the condition that no standard rating lies between least and
+// most. The staircase of ratings has one closed form for what moves its lower end,
+// the largest rating that still fits, and one for its upper end.
+func (a *Array) noRating(least, most *working.Term) *working.Condition {
+	smallest, okSmallest := a.Book.SmallestRatingFrom(least.Value())
+	largest, okLargest := a.Book.LargestRatingTo(most.Value())
+	none := !okSmallest || most.Value().Less(smallest)
+	c := working.Known(none)
+	if okLargest {
+		c.Join(working.Exceeds(least, working.Number(largest)))
+	}
+	if okSmallest {
+		c.Join(working.Exceeds(working.Number(smallest), most))
+	}
+	return c
+}
+
+// unequalStrings judges whether parallel strings have one cold open-circuit
+// voltage. Where they do not, what each contributes and what flows backwards is not
+// known without their curves.
+func (a *Array) unequalStrings(t *Tracker) working.Check {
+	check := working.Check{ID: "unequal-strings", About: a.about(t), Unit: "V", Cites: []string{a.Book.Instructions.Cite}}
+	var rules []working.Rule
+	first := t.entries[0]
+	highest, lowest := first.vocCold, first.vocCold
+	for _, e := range t.entries[1:] {
+		if highest.Value().Less(e.vocCold.Value()) {
+			highest = e.vocCold
+		}
+		if e.vocCold.Value().Less(lowest.Value()) {
+			lowest = e.vocCold
+		}
+		rules = append(rules,
+			rule(working.Unconfirmed, "strings-unequal", working.Exceeds(first.vocCold, e.vocCold)),
+			rule(working.Unconfirmed, "strings-unequal", working.Exceeds(e.vocCold, first.vocCold)))
+	}
+	for i := range rules {
+		for _, c := range rules[i].Broken {
+			c.Without(a.terms.ColdestInput) // both sides move with it, by the table in steps
+		}
+	}
+	if len(t.entries) > 1 {
+		difference := working.Named("ΔVcold", "V", highest.Minus(lowest))
+		check.Value, check.Limit = valueOf(difference), new(quantity.Int(0))
+		check.Steps = shown(highest, lowest, difference)
+	}
+	return judged(check, rules)
+}

@@ -1,0 +1,54 @@
+package stringing
+
+import "rimeline/sizing/working"
+
+// StringChecks judges one strings entry, by its index in the design.
+func (a *Array) StringChecks(i int, tracker *Tracker) []working.Check {
+	e := &a.wired[i]
+	_, k := a.trackerOf(e)
+	checks := make([]working.Check, 0, 11)
+	checks = append(checks, a.voltageCeiling(e), a.headroom(e), a.methodDifference(e), a.coldValidity(e), a.hotMinimum(e))
+	if a.terms.Inverters[e.inverter].Start != nil {
+		checks = append(checks, a.start(e))
+	}
+	if k.FullPowerMin != nil {
+		checks = append(checks, a.fullPowerLow(e))
+	}
+	if k.FullPowerMax != nil {
+		checks = append(checks, a.fullPowerHigh(e))
+	}
+	return append(checks, a.coldUpper(e), a.backFeed(e, tracker))
+}
+
+// TrackerChecks judges one tracker with all of its strings.
+func (a *Array) TrackerChecks(t *Tracker) []working.Check {
+	return []working.Check{
+		a.operatingCurrent(t), a.shortCircuit(t), a.inputs(t),
+		a.unequalStrings(t), a.planesMixed(t), a.currentBasis(t),
+	}
+}
+
+// Strings returns the indexes of the strings entries on the tracker.
+func (t *Tracker) Strings() []int { return indexes(t.entries) }
+
+// Strings returns the indexes of the strings entries on the unit.
+func (u *Unit) Strings() []int { return indexes(u.entries) }
+
+func indexes(entries []*entry) []int {
+	list := make([]int, len(entries))
+	for i, e := range entries {
+		list[i] = e.index
+	}
+	return list
+}
+
+// Voltages are a strings entry's voltages in V: open circuit on the coldest
+// morning, operating at STC, operating on the hottest roof.
+func (a *Array) Voltages(i int) (vocCold, vmpSTC, vmpHot *working.Term) {
+	e := &a.wired[i]
+	v := &a.planes[e.plane]
+	return e.vocCold, e.terms.Series.Times(v.terms.Vmp), e.terms.Series.Times(v.vmpHot)
+}
+
+// PlaneOf returns the index of the plane a strings entry lies on.
+func (a *Array) PlaneOf(i int) int { return a.wired[i].plane }

@@ -1,0 +1,128 @@
+package stringing
+
+import (
+	"cmp"
+	"slices"
+
+	"rimeline/sizing/design"
+	"rimeline/sizing/quantity"
+	"rimeline/sizing/working"
+)
+
+// inputs judges that no more strings are on a tracker than it has inputs.
+func (a *Array) inputs(t *Tracker) working.Check {
+	k := &a.terms.Inverters[t.inverter].Trackers[t.tracker]
+	strings := total("Σs", "", t.entries, func(e *entry) *working.Term { return e.terms.Parallel })
+	return judged(working.Check{
+		ID: "inputs", About: a.about(t), Value: valueOf(strings), Limit: valueOf(k.Inputs),
+		Cites: []string{a.Book.Instructions.Cite}, Steps: shown(strings),
+	}, []working.Rule{rule(working.Outside, "", working.Exceeds(strings, k.Inputs))})
+}
+
+// total adds a term of every entry; 0 where there is none.
+func total(symbol, unit string, entries []*entry, of func(*entry) *working.Term) *working.Term {
+	sum := working.Whole(0)
+	for i, e := range entries {
+		if i == 0 {
+			sum = of(e)
+		} else {
+			sum = sum.Plus(of(e))
+		}
+	}
+	return working.Named(symbol, unit, sum)
+}
+
+// planesMixed judges whether the strings of a tracker lie on planes of one tilt and
+// azimuth. Equal strings of different planes in parallel lose little, since their
+// voltages stay close; someone must still decide.
+func (a *Array) planesMixed(t *Tracker) working.Check {
+	var rules []working.Rule
+	first := t.entries[0].plane
+	p := &a.Design.Planes[first]
+	for _, e := range t.entries[1:] {
+		if e.plane == first {
+			continue
+		}
+		q := &a.Design.Planes[e.plane]
+		switch {
+		case p.TiltDeg == nil || p.AzimuthDeg == nil || q.TiltDeg == nil || q.AzimuthDeg == nil:
+			rules = append(rules, rule(working.Unconfirmed, "angle-not-stated"))
+		case !p.TiltDeg.Equal(*q.TiltDeg) || !sameAzimuth(*p.AzimuthDeg, *q.AzimuthDeg):
+			rules = append(rules, rule(working.Caution, "planes-differ"))
+		}
+	}
+	return judged(working.Check{ID: "planes-mixed", About: a.about(t), Cites: []string{a.Book.Instructions.Cite}}, rules)
+}
+
+// sameAzimuth reports whether two azimuths are one direction: 0° and 360° are.
+func sameAzimuth(a, b quantity.Exact) bool {
+	return a.Sub(b).Quo(quantity.Int(360)).IsWhole()
+}
+
+// Places judges that a plane has a place for every module strung on it.
+func (a *Array) Places(plane int) working.Check {
+	var on []*entry
+	for i := range a.wired {
+		if a.wired[i].plane == plane {
+			on = append(on, &a.wired[i])
+		}
+	}
+	positions := a.terms.Planes[plane].Positions
+	modules := total("Σmodules", "", on, func(e *entry) *working.Term { return e.terms.Series.Times(e.terms.Parallel) })
+	left := working.Named("left over", "", positions.Minus(modules))
+	check := judged(working.Check{
+		ID: "places", About: working.About{String: -1, Plane: a.Design.Planes[plane].ID},
+		Value: valueOf(modules), Limit: valueOf(positions), Steps: shown(left, modules),
+	}, []working.Rule{rule(working.Outside, "", working.Exceeds(modules, positions))})
+	if left.Value().Sign() > 0 {
+		check.Reasons = append(check.Reasons, working.Reason{Code: "places-left-over"})
+	}
+	return check
+}
+
+// Unit is one inverter unit that strings are on.
+type Unit struct {
+	inverter int
+	unit     int64
+	entries  []*entry
+}
+
+// Units returns the inverter units that strings are on, in the order of the design.
+func (a *Array) Units() []Unit {
+	var found []Unit
+	for i := range a.wired {
+		e := &a.wired[i]
+		at, ok := slices.BinarySearchFunc(found, e, func(u Unit, e *entry) int {
+			return cmp.Or(cmp.Compare(u.inverter, e.inverter), cmp.Compare(u.unit, e.Unit))
+		})
+		if !ok {
+			found = slices.Insert(found, at, Unit{inverter: e.inverter, unit: e.Unit})
+		}
+		found[at].entries = append(found[at].entries, e)
+	}
+	return found
+}
+
+// DCPower judges that the modules' power on an inverter unit does not exceed its
+// maximum DC power; ok is false where none is stated.
+func (a *Array) DCPower(u *Unit) (check working.Check, ok bool) {
+	limit := a.terms.Inverters[u.inverter].MaxDCPower
+	if limit == nil {
+		return check, false
+	}
+	v := &a.Design.Inverters[u.inverter]
+	broken := working.Outside
+	if v.MaxDCPowerIs == design.PowerAdvice {
+		broken = working.Caution
+	}
+	power := total("ΣPmax", "W", u.entries, func(e *entry) *working.Term {
+		return a.planes[e.plane].terms.Pmax.Times(e.terms.Series).Times(e.terms.Parallel)
+	})
+	rules := []working.Rule{rule(broken, "", working.Exceeds(power, limit))}
+	rules = a.trackerDoubts(rules, &Tracker{entries: u.entries}, "dc-power")
+	return judged(working.Check{
+		ID: "dc-power", About: working.About{String: -1, Inverter: v.ID, Unit: u.unit},
+		Value: valueOf(power), Limit: valueOf(limit), Unit: "W",
+		Cites: []string{a.Book.Instructions.Cite}, Steps: shown(power),
+	}, rules), true
+}

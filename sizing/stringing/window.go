@@ -1,0 +1,126 @@
+package stringing
+
+import (
+	"rimeline/sizing/quantity"
+	"rimeline/sizing/working"
+)
+
+// operatingString returns the string's hot operating voltage.
+func (a *Array) operatingString(e *entry) *working.Term {
+	return working.Named("Vhot", "V", e.terms.Series.Times(a.planes[e.plane].vmpHot))
+}
+
+// hotMinimum judges that on the hottest roof the string stays in the tracker's window.
+func (a *Array) hotMinimum(e *entry) working.Check {
+	_, k := a.trackerOf(e)
+	return a.reaches("hot-minimum", e, k.MPPTMin, working.Outside)
+}
+
+// fullPowerLow judges that on the hottest roof the inverter can still give full power.
+func (a *Array) fullPowerLow(e *entry) working.Check {
+	_, k := a.trackerOf(e)
+	return a.reaches("full-power-low", e, k.FullPowerMin, working.Caution)
+}
+
+// reaches judges that the hot operating voltage is not below a minimum. Where the
+// slope is a stand-in and the minimum is met, it is held a second time with the
+// slope made steeper by the current coefficient, since a stand-in is optimistic by
+// about that much; not met then is a caution with both values.
+func (a *Array) reaches(id string, e *entry, minimum *working.Term, broken working.Verdict) working.Check {
+	v := &a.planes[e.plane]
+	n, distance := e.terms.Series, at25(v.cellHot)
+	hot := a.operatingString(e)
+	terms := a.hotSteps(v)
+
+	// n × (Vmp × scale + slope × scale × ΔT) × allowance against minimum × scale
+	held := func(scaled, scale *working.Term) *working.Condition {
+		voltage := times(v.terms.Vmp, scale).Plus(scaled.Times(distance))
+		return working.Exceeds(times(minimum, scale), times(n.Times(voltage), a.hotAllowance()))
+	}
+	rules := []working.Rule{rule(broken, "", held(v.slope.scaled, v.slope.scale))}
+	if v.slope.standIn {
+		loss := a.currentLoss(v)
+		scaled := times(v.slope.scaled, loss.scale).Minus(times(loss.scaled, v.slope.scale))
+		scale := v.slope.scale
+		if loss.scale != nil {
+			scale = times(loss.scale, scale)
+		}
+		rules = append(rules, rule(working.Caution, "stand-in-coefficient", held(scaled, scale)))
+		if quantity.Int(25).Less(v.cellHot.Value()) {
+			steeper := v.terms.Vmp.Plus(v.slope.perC.Minus(loss.perC).Times(distance))
+			terms = append(terms, working.Named("Vhot,steeper", "V", times(n.Times(steeper), a.hotAllowance())))
+		}
+	}
+	return judged(working.Check{
+		ID: id, About: aboutString(e), Value: valueOf(hot), Limit: valueOf(minimum), Unit: "V",
+		Cites: []string{a.Book.Instructions.Cite},
+		Steps: shown(append(terms, hot)...),
+	}, a.doubtRules(rules, e.plane, id))
+}
+
+// defaultAlphaPct stands for a current coefficient that is not stated, in %/°C. Common practice for crystalline silicon.
+var defaultAlphaPct = quantity.Ratio(5, 100)
+
+// currentLoss returns α × Vmp ÷ 100, the part of the slope that a stand-in leaves
+// out: 0.05 %/°C where the current coefficient is not stated, 0 where it is negative.
+func (a *Array) currentLoss(v *plane) slopeOfVmp {
+	vmp, c := v.terms.Vmp, v.terms.IscCoeff
+	switch {
+	case c == nil:
+		perC := working.Looked("α", defaultAlphaPct).Times(vmp).Over(working.Whole(100))
+		return slopeOfVmp{perC: perC, scaled: perC}
+	case c.Term.Value().Sign() < 0:
+		return slopeOfVmp{perC: working.Whole(0), scaled: working.Whole(0)}
+	case c.IsPercent():
+		perC := c.Term.Times(vmp).Over(working.Whole(100))
+		return slopeOfVmp{perC: perC, scaled: perC}
+	}
+	perC := c.PerC(v.terms.Isc)
+	return slopeOfVmp{perC: perC.Over(v.terms.Isc).Times(vmp), scaled: perC.Times(vmp), scale: v.terms.Isc}
+}
+
+// startShare is the share of its voltage that a string has at first light; the
+// inverter must start on that. Common practice: Voc at dawn is 85 to 90 % of STC.
+var startShare = quantity.Ratio(9, 10)
+
+// start judges that a hot string's open-circuit voltage starts the inverter. No
+// check where no start voltage is stated.
+func (a *Array) start(e *entry) working.Check {
+	v := &a.planes[e.plane]
+	minimum := a.terms.Inverters[e.inverter].Start
+	voltage := working.Named("Voc,hot,string", "V", e.terms.Series.Times(v.vocHot))
+	rules := []working.Rule{
+		rule(working.Outside, "", working.Exceeds(minimum, voltage)),
+		rule(working.Caution, "start-at-first-light", working.Exceeds(minimum, working.Number(startShare).Times(voltage))),
+	}
+	return judged(working.Check{
+		ID: "start", About: aboutString(e), Value: valueOf(voltage), Limit: valueOf(minimum), Unit: "V",
+		Cites: []string{a.Book.Instructions.Cite},
+		Steps: shown(a.terms.Hottest, a.terms.Planes[e.plane].Rise, v.cellHot, v.vocHot, voltage),
+	}, a.doubtRules(rules, e.plane, "start"))
+}
+
+// fullPowerHigh judges that on the coldest morning the operating voltage stays
+// where the inverter gives full power; coldUpper that it stays in the tracker's window.
+func (a *Array) fullPowerHigh(e *entry) working.Check {
+	_, k := a.trackerOf(e)
+	return a.staysBelow("full-power-high", e, k.FullPowerMax)
+}
+
+func (a *Array) coldUpper(e *entry) working.Check {
+	_, k := a.trackerOf(e)
+	return a.staysBelow("cold-upper", e, k.MPPTMax)
+}
+
+func (a *Array) staysBelow(id string, e *entry, maximum *working.Term) working.Check {
+	v := &a.planes[e.plane]
+	n := e.terms.Series
+	cold := working.Named("Vmp,cold,string", "V", n.Times(v.vmpCold))
+	voltage := times(v.terms.Vmp, v.slope.scale).Plus(v.slope.scaled.Times(at25(a.terms.Coldest)))
+	rules := []working.Rule{rule(working.Caution, "", working.Exceeds(n.Times(voltage), times(maximum, v.slope.scale)))}
+	return judged(working.Check{
+		ID: id, About: aboutString(e), Value: valueOf(cold), Limit: valueOf(maximum), Unit: "V",
+		Cites: []string{a.Book.Instructions.Cite},
+		Steps: shown(a.terms.Coldest, v.vmpCold, cold),
+	}, a.doubtRules(rules, e.plane, id))
+}

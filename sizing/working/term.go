@@ -1,0 +1,269 @@
+package working
+
+import "rimeline/sizing/quantity"
+
+type op uint8
+
+const (
+	opNumber op = iota // a number of a code or a conversion
+	opInput            // a number of the document
+	opNamed            // a result with a name of its own
+	opAdd
+	opSub
+	opMul
+	opDiv
+	opMax
+	opMin
+	opFloor // these two only print: a condition is put without them
+	opCeil
+)
+
+// Input is one number of the document that a formula rests on. Two terms rest on
+// the same input if they share the *Input.
+type Input struct {
+	Pointer string         // JSON Pointer of the number
+	Now     quantity.Exact // as the document states it
+	Whole   bool           // only whole numbers from 1 up are permitted
+
+	// The values that the reader accepts lie strictly between Low and High; nil is no
+	// bound. A turning point outside them is none, since no design can reach it.
+	Low, High *quantity.Exact
+}
+
+// Term is a node of a formula. Terms are immutable, may be shared between
+// formulas, and know their value.
+type Term struct {
+	op     op
+	rests  bool // an input is somewhere below
+	forks  bool // a max or min that rests on an input is somewhere below
+	a, b   *Term
+	input  *Input
+	value  quantity.Exact
+	symbol string // of an input or a named result; the text of a number
+	unit   string
+	step   *Step // memo of a named result's line
+}
+
+// Value returns the term's value.
+func (t *Term) Value() quantity.Exact { return t.value }
+
+// Number returns a term for a number that belongs to the formula itself: a
+// code's factor, 25 °C, the 100 of a percentage.
+func Number(x quantity.Exact) *Term { return &Term{op: opNumber, value: x} }
+
+// Whole returns a term for a whole number of the formula itself.
+func Whole(n int64) *Term { return Number(quantity.Int(n)) }
+
+// Looked returns a term for a number read from a table: a bare factor in the sum,
+// a symbol in the expression.
+func Looked(symbol string, x quantity.Exact) *Term {
+	return &Term{op: opNumber, value: x, symbol: symbol}
+}
+
+// Of returns a term for an input of the document.
+func Of(symbol, unit string, in *Input) *Term {
+	return &Term{op: opInput, rests: true, input: in, value: in.Now, symbol: symbol, unit: unit}
+}
+
+// Named gives a formula a name. Where the named result is used, its expression
+// shows the name and its numbers show the value; a value without a finite decimal
+// shows as the sum it comes from, so that no printed line is off by a rounding.
+func Named(symbol, unit string, formula *Term) *Term {
+	return &Term{op: opNamed, rests: formula.rests, forks: formula.forks, a: formula, value: formula.value, symbol: symbol, unit: unit}
+}
+
+func node(o op, a, b *Term, value quantity.Exact) *Term {
+	return &Term{op: o, rests: a.rests || b.rests, forks: a.forks || b.forks, a: a, b: b, value: value}
+}
+
+// Plus returns t + u.
+func (t *Term) Plus(u *Term) *Term { return node(opAdd, t, u, t.value.Add(u.value)) }
+
+// Minus returns t − u.
+func (t *Term) Minus(u *Term) *Term { return node(opSub, t, u, t.value.Sub(u.value)) }
+
+// Times returns t × u.
+func (t *Term) Times(u *Term) *Term { return node(opMul, t, u, t.value.Mul(u.value)) }
+
+// Over returns t ÷ u. It panics if u is 0. Turning points are found only for
+// formulas in which no input stands below the line.
+func (t *Term) Over(u *Term) *Term { return node(opDiv, t, u, t.value.Quo(u.value)) }
+
+// MaxOf returns the greater of t and u.
+func MaxOf(t, u *Term) *Term {
+	n := node(opMax, t, u, quantity.Max(t.value, u.value))
+	n.forks = n.rests
+	return n
+}
+
+// MinOf returns the lesser of t and u.
+func MinOf(t, u *Term) *Term {
+	n := node(opMin, t, u, quantity.Min(t.value, u.value))
+	n.forks = n.rests
+	return n
+}
+
+// FloorOf returns the greatest whole number that is not above t.
+func FloorOf(t *Term) *Term { return &Term{op: opFloor, a: t, value: t.value.Floor()} }
+
+// CeilOf returns the least whole number that is not below t.
+func CeilOf(t *Term) *Term { return &Term{op: opCeil, a: t, value: t.value.Ceil()} }
+
+// Step returns the line of work that shows a named term.
+func (t *Term) Step() Step {
+	if t.op != opNamed {
+		panic("working: only a named term has a step")
+	}
+	if t.step == nil {
+		var buf [192]byte
+		t.step = &Step{
+			Symbol:      t.symbol,
+			Expression:  string(t.a.appendExpression(buf[:0])),
+			WithNumbers: string(t.a.appendNumbers(buf[:0])),
+			Value:       t.value,
+			Unit:        t.unit,
+		}
+	}
+	return *t.step
+}
+
+// Binding strength of what a term prints.
+const (
+	bindsAdd = iota + 1
+	bindsMul
+	bindsAtom
+)
+
+func (o op) binds() int {
+	switch o {
+	case opAdd, opSub:
+		return bindsAdd
+	case opMul, opDiv:
+		return bindsMul
+	}
+	return bindsAtom
+}
+
+func (o op) sign() string {
+	switch o {
+	case opAdd:
+		return " + "
+	case opSub:
+		return " − "
+	case opMul:
+		return " × "
+	}
+	return " ÷ "
+}
+
+// needs returns how strongly the operands of an operation must bind to stand
+// without parentheses. a + (b − c) and a × (b ÷ c) need none on the right.
+func (o op) needs() (left, right int) {
+	switch o {
+	case opAdd:
+		return bindsAdd, bindsAdd
+	case opSub:
+		return bindsAdd, bindsMul
+	case opMul:
+		return bindsMul, bindsMul
+	}
+	return bindsMul, bindsAtom
+}
+
+func (t *Term) appendExpression(dst []byte) []byte {
+	switch t.op {
+	case opNumber:
+		if t.symbol == "" {
+			return appendValue(dst, t.value)
+		}
+		return append(dst, t.symbol...)
+	case opInput, opNamed:
+		return append(dst, t.symbol...)
+	}
+	return t.appendOperation(dst, (*Term).appendExpression, (*Term).bindsInExpression)
+}
+
+func (t *Term) bindsInExpression() int { return t.op.binds() }
+
+func (t *Term) appendNumbers(dst []byte) []byte {
+	switch t.op {
+	case opNumber, opInput:
+		return appendValue(dst, t.value)
+	case opNamed:
+		if t.printsAsValue() {
+			return appendValue(dst, t.value)
+		}
+		return t.a.appendNumbers(dst)
+	}
+	return t.appendOperation(dst, (*Term).appendNumbers, (*Term).bindsInNumbers)
+}
+
+// longestPlaces is how many decimal places a named result may have to stand as a
+// number in a later line; beyond it the sum is as short.
+const longestPlaces = 24
+
+func (t *Term) printsAsValue() bool {
+	places, finite := t.value.Decimal()
+	return finite && places <= longestPlaces
+}
+
+func (t *Term) bindsInNumbers() int {
+	if t.op == opNamed && !t.printsAsValue() {
+		return t.a.bindsInNumbers()
+	}
+	return t.op.binds()
+}
+
+func (t *Term) appendOperation(dst []byte, appendTerm func(*Term, []byte) []byte, binds func(*Term) int) []byte {
+	switch t.op {
+	case opFloor:
+		return append(appendTerm(t.a, append(dst, "⌊"...)), "⌋"...)
+	case opCeil:
+		return append(appendTerm(t.a, append(dst, "⌈"...)), "⌉"...)
+	case opMax, opMin:
+		if t.op == opMax {
+			dst = append(dst, "max("...)
+		} else {
+			dst = append(dst, "min("...)
+		}
+		dst = appendTerm(t.a, dst)
+		dst = append(dst, ", "...)
+		return append(appendTerm(t.b, dst), ')')
+	}
+	left, right := t.op.needs()
+	dst = appendOperand(dst, t.a, appendTerm, binds(t.a) < left)
+	dst = append(dst, t.op.sign()...)
+	return appendOperand(dst, t.b, appendTerm, binds(t.b) < right)
+}
+
+func appendOperand(dst []byte, t *Term, appendTerm func(*Term, []byte) []byte, bracket bool) []byte {
+	if !bracket {
+		return appendTerm(t, dst)
+	}
+	dst = append(dst, '(')
+	return append(appendTerm(t, dst), ')')
+}
+
+// appendValue appends a number for a sum: a true minus, and parentheses around a
+// negative number unless it stands first in the line.
+func appendValue(dst []byte, x quantity.Exact) []byte {
+	if x.Sign() >= 0 {
+		return x.AppendJSON(dst)
+	}
+	bracket := len(dst) > 0
+	if bracket {
+		dst = append(dst, '(')
+	}
+	dst = append(dst, "−"...)
+	dst = x.Neg().AppendJSON(dst)
+	if bracket {
+		dst = append(dst, ')')
+	}
+	return dst
+}
+
+// IsNamed reports whether the term is a named result, which has a step.
+func (t *Term) IsNamed() bool { return t.op == opNamed }
+
+// Formula returns what a named term names.
+func (t *Term) Formula() *Term { return t.a }
