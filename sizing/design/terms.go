@@ -127,7 +127,7 @@ func NewTerms(d *Design) *Terms {
 	}
 	for i := range d.OtherLimits {
 		o := &d.OtherLimits[i]
-		t.OtherLimits[i] = positive(o.Name, "V", "/other_limits/"+strconv.Itoa(i)+"/max_voltage_v", o.MaxVoltageV)
+		t.OtherLimits[i] = positive("Vother,"+strconv.Itoa(i+1), "V", "/other_limits/"+strconv.Itoa(i)+"/max_voltage_v", o.MaxVoltageV)
 	}
 	for i := range d.Strings {
 		s, at := &d.Strings[i], "/strings/"+strconv.Itoa(i)+"/"

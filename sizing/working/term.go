@@ -116,13 +116,10 @@ func (t *Term) Step() Step {
 	}
 	if t.step == nil {
 		var buf [192]byte
-		t.step = &Step{
-			Symbol:      t.symbol,
-			Expression:  string(t.a.appendExpression(buf[:0])),
-			WithNumbers: string(t.a.appendNumbers(buf[:0])),
-			Value:       t.value,
-			Unit:        t.unit,
-		}
+		t.step = &Step{Symbol: t.symbol, Value: t.value, Unit: t.unit}
+		// Two statements: a conversion to string may otherwise wait until buf is written again.
+		t.step.Expression = string(t.a.appendExpression(buf[:0]))
+		t.step.WithNumbers = string(t.a.appendNumbers(buf[:0]))
 	}
 	return *t.step
 }
