@@ -175,6 +175,7 @@ func (w *writer) check(c *working.Check) {
 		w.text("pointer", t.Pointer)
 		w.number("at", t.At)
 		w.numberOrNull("change_pct", t.ChangePct)
+		w.text("to", t.To.String())
 		w.shut('}')
 	})
 	w.list("reasons", len(c.Reasons), func(i int) {

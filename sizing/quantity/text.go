@@ -147,8 +147,24 @@ const SignificantDigits = 12
 // AppendJSON appends x as a JSON number: a finite decimal in full, any other
 // number rounded to [SignificantDigits], halves away from zero.
 func (x Exact) AppendJSON(dst []byte) []byte {
+	if x.big == nil {
+		// A denominator of twos and fives needs no reducing: the zeros that it brings are cut off the end.
+		if places, finite := smallPlaces(x.d()); finite && places < len(pow10) {
+			if n, ok := mul64(x.num, pow10[places]); ok {
+				n /= x.d()
+				for places > 0 && n%10 == 0 {
+					n /= 10
+					places--
+				}
+				return appendPlaced(dst, n < 0, abs64(n), places)
+			}
+		}
+	}
 	places, finite := x.Decimal()
 	if !finite {
+		if long, ok := x.appendSignificant(dst); ok {
+			return long
+		}
 		places = x.placesFor(SignificantDigits)
 	}
 	return x.appendRounded(dst, places, Nearest, finite)
@@ -156,6 +172,45 @@ func (x Exact) AppendJSON(dst []byte) []byte {
 
 // String returns the text of [Exact.AppendJSON].
 func (x Exact) String() string { return string(x.AppendJSON(nil)) }
+
+// appendSignificant appends a small number without a finite decimal with
+// [SignificantDigits]; ok is false where it takes more than two machine words.
+func (x Exact) appendSignificant(dst []byte) (long []byte, ok bool) {
+	if x.big != nil {
+		return dst, false
+	}
+	n, d := abs64(x.num), uint64(x.d())
+	places := SignificantDigits - 1
+	for lead := n / d; lead >= 10; lead /= 10 {
+		places--
+	}
+	if n < d {
+		for places++; ; places++ {
+			if places > 18 {
+				return dst, false
+			}
+			if hi, lo := bits.Mul64(n, uint64(pow10[places-SignificantDigits+1])); hi > 0 || lo >= d {
+				break
+			}
+		}
+	}
+	if places < 0 {
+		return dst, false
+	}
+	hi, lo := bits.Mul64(n, uint64(pow10[places]))
+	if hi >= d {
+		return dst, false
+	}
+	q, rem := bits.Div64(hi, lo, d)
+	if cmpHalf(rem, d) >= 0 {
+		q++
+	}
+	for places > 0 && q%10 == 0 { // the digits that are given are all that is known, but a rounding to …0 needs no zeros
+		q /= 10
+		places--
+	}
+	return appendPlaced(dst, x.num < 0, q, places), true
+}
 
 // placesFor returns how many decimal places show n significant digits of x; negative to the left of the point.
 func (x Exact) placesFor(n int) int {
@@ -205,7 +260,7 @@ func (x Exact) appendRounded(dst []byte, places int, dir Direction, known bool) 
 			if rem != 0 && !known {
 				q += step(dir, rem < 0, cmpHalf(abs64(rem), uint64(d)))
 			}
-			return appendPlaced(dst, q < 0, strconv.AppendUint(nil, abs64(q), 10), places)
+			return appendPlaced(dst, q < 0, abs64(q), places)
 		}
 	}
 	r := x.rat()
@@ -225,7 +280,7 @@ func (x Exact) appendRounded(dst []byte, places int, dir Direction, known bool) 
 		q.Mul(q, bigPow10(-places))
 		places = 0
 	}
-	return appendPlaced(dst, q.Sign() < 0, new(big.Int).Abs(q).Append(nil, 10), places)
+	return appendDigits(dst, q.Sign() < 0, new(big.Int).Abs(q).Append(nil, 10), places)
 }
 
 // step returns what to add to a quotient truncated towards zero.
@@ -254,17 +309,29 @@ func cmpHalf(rem, d uint64) int {
 	return 0
 }
 
-func appendPlaced(dst []byte, negative bool, digits []byte, places int) []byte {
+// appendPlaced appends digits ÷ 10^places.
+func appendPlaced(dst []byte, negative bool, digits uint64, places int) []byte {
+	var buf [20]byte
+	return appendDigits(dst, negative, strconv.AppendUint(buf[:0], digits, 10), places)
+}
+
+func appendDigits(dst []byte, negative bool, digits []byte, places int) []byte {
 	if negative {
 		dst = append(dst, '-')
 	}
-	if lead := places + 1 - len(digits); lead > 0 {
-		digits = append([]byte(strings.Repeat("0", lead)), digits...)
+	whole := len(digits) - places
+	if whole > 0 {
+		dst = append(dst, digits[:whole]...)
+		digits = digits[whole:]
+	} else {
+		dst = append(dst, '0')
 	}
-	dst = append(dst, digits[:len(digits)-places]...)
 	if places > 0 {
 		dst = append(dst, '.')
-		dst = append(dst, digits[len(digits)-places:]...)
+		for range -whole {
+			dst = append(dst, '0')
+		}
+		dst = append(dst, digits...)
 	}
 	return dst
 }

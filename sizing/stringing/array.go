@@ -29,9 +29,12 @@ type Array struct {
 	Design *design.Design
 	Book   *rulebook.Book
 	terms  *design.Terms
-	doubts [][]design.Doubt // by module
-	planes []plane
-	wired  []entry
+	doubts [][]design.Doubt            // by module
+	open   []map[string][]working.Rule // by module: the rules by which its doubts bear on a check
+
+	ceilings []ceilingOf // by plane × inverter, found when first asked for
+	planes   []plane
+	wired    []entry
 }
 
 // entry is a strings entry with its places found and its voltages.
@@ -50,11 +53,16 @@ func NewArray(d *design.Design) *Array {
 		Book:   rulebook.Find(d.Rulebook),
 		terms:  design.NewTerms(d),
 		doubts: make([][]design.Doubt, len(d.Modules)),
+		open:   make([]map[string][]working.Rule, len(d.Modules)),
+
+		ceilings: make([]ceilingOf, len(d.Planes)*len(d.Inverters)),
+
 		planes: make([]plane, len(d.Planes)),
 		wired:  make([]entry, len(d.Strings)),
 	}
 	for i := range d.Modules {
 		a.doubts[i] = design.Doubts(d, a.terms, i)
+		a.open[i] = rulesOf(a.doubts[i])
 	}
 	for i := range d.Planes {
 		a.planes[i] = a.newPlane(i)
@@ -100,33 +108,33 @@ func (a *Array) Questions() []working.Question {
 	return open
 }
 
-// doubtRules returns the rules by which open questions about a plane's module keep
-// a check from being confirmed. A doubt that an answer closed is not among them.
-func (a *Array) doubtRules(rules []working.Rule, plane int, check string) []working.Rule {
-	module := a.planes[plane].module
-	for i := range a.doubts[module] {
-		doubt := &a.doubts[module][i]
-		if doubt.Answered || !contains(doubt.UnsafeFor, check) {
+// rulesOf returns, by check, the rules by which doubts about a module keep the check
+// from being confirmed. A doubt that an answer closed is not among them.
+func rulesOf(doubts []design.Doubt) map[string][]working.Rule {
+	rules := map[string][]working.Rule{}
+	for i := range doubts {
+		doubt := &doubts[i]
+		if doubt.Answered {
 			continue
 		}
-		for _, c := range doubt.Conditions {
-			rules = append(rules, working.Rule{
-				Broken:  []*working.Condition{c},
+		for k := range doubt.Conditions {
+			r := working.Rule{
+				Broken:  doubt.Conditions[k : k+1],
 				Verdict: working.Unconfirmed,
 				Reason:  working.Reason{Code: "open-question", Pointer: doubt.Pointer},
-			})
+				Doubt:   true,
+			}
+			for _, check := range doubt.UnsafeFor {
+				rules[check] = append(rules[check], r)
+			}
 		}
 	}
 	return rules
 }
 
-func contains(ids []string, id string) bool {
-	for _, x := range ids {
-		if x == id {
-			return true
-		}
-	}
-	return false
+// doubtRules adds the rules by which open questions about a plane's module bear on a check.
+func (a *Array) doubtRules(rules []working.Rule, plane int, check string) []working.Rule {
+	return append(rules, a.open[a.planes[plane].module][check]...)
 }
 
 // judged completes a check with the verdict, reasons and turning points of its rules.

@@ -22,6 +22,20 @@ type CeilingEntry struct {
 // which a tie is named, and the lowest of them as a term. NEC 690.7: the structure's
 // ceiling; 110.3(B): each part's own rating.
 func (a *Array) ceiling(v *plane, inverter int) ([]CeilingEntry, *working.Term) {
+	found := &a.ceilings[v.index*len(a.Design.Inverters)+inverter]
+	if found.lowest == nil {
+		found.entries, found.lowest = a.newCeiling(v, inverter)
+	}
+	return found.entries, found.lowest
+}
+
+// ceilingOf is the ceiling of one plane's strings at one inverter.
+type ceilingOf struct {
+	entries []CeilingEntry
+	lowest  *working.Term
+}
+
+func (a *Array) newCeiling(v *plane, inverter int) ([]CeilingEntry, *working.Term) {
 	entries := make([]CeilingEntry, 0, 3+len(a.terms.OtherLimits))
 	add := func(from, source, pointer string, term *working.Term) {
 		entries = append(entries, CeilingEntry{From: from, MaxV: term.Value(), Source: source, Pointer: pointer, term: term})
@@ -74,9 +88,9 @@ func (a *Array) meets(v *plane, n, ceiling *working.Term) *working.Term {
 // limit, or every row does.
 func (a *Array) lastRow(v *plane, n *working.Term, limit quantity.Exact) (lowerC quantity.Exact, ok bool) {
 	broken := false
+	voltage := times(n.Times(v.terms.Voc), a.coldAllowance()).Value()
 	for _, row := range a.Book.ColdFactors {
-		voltage := times(n.Times(v.coldByRow(row)), a.coldAllowance())
-		if limit.Less(voltage.Value()) {
+		if limit.Less(voltage.Mul(row.Factor)) {
 			broken = true
 			break
 		}

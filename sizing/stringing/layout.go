@@ -3,6 +3,7 @@ package stringing
 import (
 	"cmp"
 	"slices"
+	"strconv"
 
 	"rimeline/sizing/design"
 	"rimeline/sizing/quantity"
@@ -12,24 +13,36 @@ import (
 // inputs judges that no more strings are on a tracker than it has inputs.
 func (a *Array) inputs(t *Tracker) working.Check {
 	k := &a.terms.Inverters[t.inverter].Trackers[t.tracker]
-	strings := total("Σs", "", t.entries, func(e *entry) *working.Term { return e.terms.Parallel })
+	strings, lines := total("s", "", t.entries, func(e *entry) *working.Term { return e.terms.Parallel })
 	return judged(working.Check{
 		ID: "inputs", About: a.about(t), Value: valueOf(strings), Limit: valueOf(k.Inputs),
-		Cites: []string{a.Book.Instructions.Cite}, Steps: shown(strings),
+		Cites: []string{a.Book.Instructions.Cite}, Steps: shown(lines...),
 	}, []working.Rule{rule(working.Outside, "", working.Exceeds(strings, k.Inputs))})
 }
 
-// total adds a term of every entry; 0 where there is none.
-func total(symbol, unit string, entries []*entry, of func(*entry) *working.Term) *working.Term {
-	sum := working.Whole(0)
-	for i, e := range entries {
-		if i == 0 {
-			sum = of(e)
+// total adds a term of every entry, with a line for each where there are several;
+// it is 0 where there is none. It returns the terms to show, the total last.
+func total(symbol, unit string, entries []*entry, of func(*entry) *working.Term) (*working.Term, []*working.Term) {
+	if len(entries) == 0 {
+		none := working.Named("Σ"+symbol, unit, working.Whole(0))
+		return none, []*working.Term{none}
+	}
+	var sum *working.Term
+	var lines []*working.Term
+	for _, e := range entries {
+		part := of(e)
+		if len(entries) > 1 {
+			part = working.Named(symbol+strconv.Itoa(e.index+1), unit, part)
+			lines = append(lines, part)
+		}
+		if sum == nil {
+			sum = part
 		} else {
-			sum = sum.Plus(of(e))
+			sum = sum.Plus(part)
 		}
 	}
-	return working.Named(symbol, unit, sum)
+	named := working.Named("Σ"+symbol, unit, sum)
+	return named, append(lines, named)
 }
 
 // planesMixed judges whether the strings of a tracker lie on planes of one tilt and
@@ -68,11 +81,11 @@ func (a *Array) Places(plane int) working.Check {
 		}
 	}
 	positions := a.terms.Planes[plane].Positions
-	modules := total("Σmodules", "", on, func(e *entry) *working.Term { return e.terms.Series.Times(e.terms.Parallel) })
+	modules, lines := total("modules", "", on, func(e *entry) *working.Term { return e.terms.Series.Times(e.terms.Parallel) })
 	left := working.Named("left over", "", positions.Minus(modules))
 	check := judged(working.Check{
 		ID: "places", About: working.About{String: -1, Plane: a.Design.Planes[plane].ID},
-		Value: valueOf(modules), Limit: valueOf(positions), Steps: shown(left, modules),
+		Value: valueOf(modules), Limit: valueOf(positions), Steps: shown(append([]*working.Term{left}, lines...)...),
 	}, []working.Rule{rule(working.Outside, "", working.Exceeds(modules, positions))})
 	if left.Value().Sign() > 0 {
 		check.Reasons = append(check.Reasons, working.Reason{Code: "places-left-over"})
@@ -115,7 +128,7 @@ func (a *Array) DCPower(u *Unit) (check working.Check, ok bool) {
 	if v.MaxDCPowerIs == design.PowerAdvice {
 		broken = working.Caution
 	}
-	power := total("ΣPmax", "W", u.entries, func(e *entry) *working.Term {
+	power, lines := total("P", "W", u.entries, func(e *entry) *working.Term {
 		return a.planes[e.plane].terms.Pmax.Times(e.terms.Series).Times(e.terms.Parallel)
 	})
 	rules := []working.Rule{rule(broken, "", working.Exceeds(power, limit))}
@@ -123,6 +136,6 @@ func (a *Array) DCPower(u *Unit) (check working.Check, ok bool) {
 	return judged(working.Check{
 		ID: "dc-power", About: working.About{String: -1, Inverter: v.ID, Unit: u.unit},
 		Value: valueOf(power), Limit: valueOf(limit), Unit: "W",
-		Cites: []string{a.Book.Instructions.Cite}, Steps: shown(power),
+		Cites: []string{a.Book.Instructions.Cite}, Steps: shown(lines...),
 	}, rules), true
 }

@@ -17,6 +17,7 @@ type Turn struct {
 	Pointer   string          // JSON Pointer of the number in the document
 	At        quantity.Exact  // in the unit in which the document states it; for a whole number the first one with another verdict
 	ChangePct *quantity.Exact // (At ÷ now − 1) × 100; nil where the input is now 0
+	To        Verdict         // the verdict beyond At
 }
 
 // About says what a check is about. Exactly one of the shapes of the format page

@@ -52,7 +52,20 @@ func (t *Term) Value() quantity.Exact { return t.value }
 func Number(x quantity.Exact) *Term { return &Term{op: opNumber, value: x} }
 
 // Whole returns a term for a whole number of the formula itself.
-func Whole(n int64) *Term { return Number(quantity.Int(n)) }
+func Whole(n int64) *Term {
+	if 0 <= n && n < int64(len(wholes)) {
+		return wholes[n]
+	}
+	return Number(quantity.Int(n))
+}
+
+// wholes are the numbers that formulas are full of, made once.
+var wholes = func() (w [101]*Term) {
+	for n := range w {
+		w[n] = Number(quantity.Int(int64(n)))
+	}
+	return w
+}()
 
 // Looked returns a term for a number read from a table: a bare factor in the sum,
 // a symbol in the expression.

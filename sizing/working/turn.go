@@ -263,6 +263,10 @@ type Rule struct {
 	Broken  []*Condition
 	Verdict Verdict
 	Reason  Reason // Code "" where the value says it all
+
+	// Doubt marks a rule about whether an input is right rather than whether it fits.
+	// Its turning points count for the inputs of the other rules and add none of their own.
+	Doubt bool
 }
 
 // Judge returns the worst verdict of the rules that hold, [Within] if none does,
@@ -323,6 +327,9 @@ func Turns(rules []Rule) []Turn {
 	now := verdictWith(rules, nil)
 	var turns []Turn
 	for i := range rules {
+		if rules[i].Doubt {
+			continue
+		}
 		for _, c := range rules[i].Broken {
 			c.solve()
 			for k := range c.roots {
@@ -331,11 +338,11 @@ func Turns(rules []Rule) []Turn {
 					continue
 				}
 				inputs = append(inputs, in)
-				if at, ok := nearestTurn(rules, in, now); ok {
+				if at, to := nearestTurn(rules, in, now); to != now {
 					if turns == nil {
-						turns = make([]Turn, 0, 12)
+						turns = make([]Turn, 0, 8)
 					}
-					turns = append(turns, Turn{in.Pointer, at, changePct(in.Now, at)})
+					turns = append(turns, Turn{in.Pointer, at, changePct(in.Now, at), to})
 				}
 			}
 		}
@@ -350,7 +357,9 @@ func changePct(now, at quantity.Exact) *quantity.Exact {
 	return new(at.Sub(now).Quo(now).Mul(quantity.Int(100)))
 }
 
-func nearestTurn(rules []Rule, in *Input, now Verdict) (at quantity.Exact, ok bool) {
+// nearestTurn returns the value of an input nearest to now at which the verdict
+// turns, and to what; the verdict now where it does not.
+func nearestTurn(rules []Rule, in *Input, now Verdict) (at quantity.Exact, to Verdict) {
 	var aboveBuf, belowBuf [12]event
 	above, below := aboveBuf[:0], belowBuf[:0]
 	for i := range rules {
@@ -372,18 +381,12 @@ func nearestTurn(rules []Rule, in *Input, now Verdict) (at quantity.Exact, ok bo
 			}
 		}
 	}
-	up, okUp := sweep(rules, in, above, now, quantity.Exact.Cmp)
-	down, okDown := sweep(rules, in, below, now, func(a, b quantity.Exact) int { return b.Cmp(a) })
-	switch {
-	case okUp && okDown:
-		if in.Now.Sub(down).Less(up.Sub(in.Now)) {
-			return down, true
-		}
-		return up, true
-	case okUp:
-		return up, true
+	up, toUp := sweep(rules, in, above, now, quantity.Exact.Cmp)
+	down, toDown := sweep(rules, in, below, now, func(a, b quantity.Exact) int { return b.Cmp(a) })
+	if toUp == now || toDown != now && in.Now.Sub(down).Less(up.Sub(in.Now)) {
+		return down, toDown
 	}
-	return down, okDown
+	return up, toUp
 }
 
 func containsCondition(events []event, c *Condition) bool {
@@ -407,24 +410,25 @@ func (in *Input) reached(r root, up bool) quantity.Exact {
 	return r.at.Ceil().Sub(quantity.Int(1))
 }
 
-// sweep passes the events outwards from now and returns the first value at which the verdict is another.
-func sweep(rules []Rule, in *Input, events []event, now Verdict, outwards func(a, b quantity.Exact) int) (quantity.Exact, bool) {
+// sweep passes the events outwards from now and returns the first value at which
+// the verdict is another, and which; the verdict now where there is none.
+func sweep(rules []Rule, in *Input, events []event, now Verdict, outwards func(a, b quantity.Exact) int) (quantity.Exact, Verdict) {
 	slices.SortStableFunc(events, func(a, b event) int { return outwards(a.at, b.at) })
 	var buf [12]*Condition
 	flipped := buf[:0]
 	for i, e := range events {
 		if !in.permits(e.at) {
-			return quantity.Exact{}, false
+			return quantity.Exact{}, now
 		}
 		flipped = append(flipped, e.condition)
 		if i+1 < len(events) && events[i+1].at.Equal(e.at) {
 			continue
 		}
-		if verdictWith(rules, flipped) != now {
-			return e.at, true
+		if to := verdictWith(rules, flipped); to != now {
+			return e.at, to
 		}
 	}
-	return quantity.Exact{}, false
+	return quantity.Exact{}, now
 }
 
 func (in *Input) permits(x quantity.Exact) bool {
