@@ -21,13 +21,12 @@ func (s *Server) apiSize(w http.ResponseWriter, r *http.Request) error {
 	if doc.Design == nil {
 		status, detail := http.StatusUnprocessableEntity, "The design was refused; errors lists every reason."
 		if doc.Malformed {
-			status, detail = http.StatusBadRequest, "What was sent is not JSON."
+			status, detail = http.StatusBadRequest, "What was sent is not one JSON document; errors says where it goes wrong."
 		}
-		p := problem{Status: status, Detail: detail, RequestID: visitOf(r).requestID}
-		for _, f := range doc.Faults {
-			p.Errors = append(p.Errors, problemFault(f))
-		}
-		writeProblem(w, p)
+		writeProblem(w, problem{
+			Status: status, Detail: detail, RequestID: visitOf(r).requestID,
+			Errors: design.AppendFaults(nil, doc.Faults),
+		})
 		return nil
 	}
 	body := append(sizing.Size(doc.Design).AppendJSON(nil), '\n')

@@ -124,20 +124,12 @@ func statusTitle(status int) string {
 // problem is an error of the JSON interface (RFC 9457). Its type is about:blank:
 // the status says which kind it is, errors say the rest.
 type problem struct {
-	Type      string         `json:"type"`
-	Title     string         `json:"title"`
-	Status    int            `json:"status"`
-	Detail    string         `json:"detail"`
-	RequestID string         `json:"request_id,omitempty"`
-	Errors    []problemFault `json:"errors,omitempty"` // every reason why a document is refused
-}
-
-// problemFault is a [design.Fault] as it is sent.
-type problemFault struct {
-	Pointer  string `json:"pointer"`
-	Found    string `json:"found"`
-	Expected string `json:"expected"`
-	Detail   string `json:"detail"`
+	Type      string          `json:"type"`
+	Title     string          `json:"title"`
+	Status    int             `json:"status"`
+	Detail    string          `json:"detail"`
+	RequestID string          `json:"request_id,omitempty"`
+	Errors    json.RawMessage `json:"errors,omitempty"` // every reason why a document is refused
 }
 
 func writeProblem(w http.ResponseWriter, p problem) {
@@ -146,7 +138,7 @@ func writeProblem(w http.ResponseWriter, p problem) {
 	enc := json.NewEncoder(&body)
 	enc.SetEscapeHTML(false) // the faults quote what was found
 	if err := enc.Encode(p); err != nil {
-		panic(err) // texts and an int are always encoded
+		panic(err) // texts, a number and what AppendFaults wrote are always encoded
 	}
 	w.Header().Set("Content-Type", "application/problem+json")
 	w.Header().Set("Cache-Control", "no-store")

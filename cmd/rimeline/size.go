@@ -2,8 +2,6 @@ package main
 
 import (
 	"bufio"
-	"bytes"
-	"encoding/json"
 	"fmt"
 	"io"
 	"os"
@@ -53,7 +51,7 @@ func readInput(name string, stdin io.Reader) ([]byte, error) {
 // from 1, and the exit status that it asks for.
 func sizeDocument(k int, doc design.Document) ([]byte, int) {
 	if doc.Design == nil {
-		return refusalLine(k, doc.Faults), exitRefused
+		return append(design.AppendRefusal(nil, k, doc.Faults), '\n'), exitRefused
 	}
 	result := sizing.Size(doc.Design)
 	status := exitFits
@@ -61,29 +59,4 @@ func sizeDocument(k int, doc design.Document) ([]byte, int) {
 		status = exitDoubt
 	}
 	return append(result.AppendJSON(nil), '\n'), status
-}
-
-// refusalLine is what stands in the place of a result for a refused document.
-func refusalLine(k int, faults design.Faults) []byte {
-	type fault struct {
-		Pointer  string `json:"pointer"`
-		Found    string `json:"found"`
-		Expected string `json:"expected"`
-		Detail   string `json:"detail"`
-	}
-	refusal := struct {
-		Format   string  `json:"format"`
-		Document int     `json:"document"`
-		Errors   []fault `json:"errors"`
-	}{"rimeline-refusal/1", k, []fault{}}
-	for _, f := range faults {
-		refusal.Errors = append(refusal.Errors, fault(f))
-	}
-	var line bytes.Buffer
-	enc := json.NewEncoder(&line)
-	enc.SetEscapeHTML(false)
-	if err := enc.Encode(refusal); err != nil {
-		panic(err) // texts and an int are always encoded
-	}
-	return line.Bytes()
 }
