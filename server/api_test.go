@@ -11,8 +11,8 @@ import (
 	"rimeline/sizing/design"
 )
 
-// exampleDesign is the design of the format page.
-func exampleDesign(t *testing.T) string {
+// exampleText is the design of the format page.
+func exampleText(t *testing.T) string {
 	t.Helper()
 	text, err := os.ReadFile("../sizing/design/testdata/example-design.json")
 	if err != nil {
@@ -23,7 +23,7 @@ func exampleDesign(t *testing.T) string {
 
 func TestAPISize_Result(t *testing.T) {
 	s, _ := testServer(Config{})
-	text := exampleDesign(t)
+	text := exampleText(t)
 	want := string(sizing.Size(design.Read([]byte(text)).Design).AppendJSON(nil)) + "\n"
 	outside := strings.Replace(text, `"modules_in_series": 12`, `"modules_in_series": 90`, 1)
 	for range 2 {
@@ -40,7 +40,7 @@ func TestAPISize_Result(t *testing.T) {
 
 func TestAPISize_Refusals(t *testing.T) {
 	s, _ := testServer(Config{})
-	text := exampleDesign(t)
+	text := exampleText(t)
 	for _, c := range []struct {
 		name    string
 		body    string
@@ -87,7 +87,7 @@ func TestAPISize_Refusals(t *testing.T) {
 
 func TestAPISize_ContentTypes(t *testing.T) {
 	s, _ := testServer(Config{})
-	text := exampleDesign(t)
+	text := exampleText(t)
 	for _, c := range []struct {
 		header, value string
 		want          int
