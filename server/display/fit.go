@@ -1,0 +1,263 @@
+package display
+
+import (
+	"slices"
+	"strconv"
+	"strings"
+
+	"rimeline/sizing"
+	"rimeline/sizing/design"
+	"rimeline/sizing/quantity"
+	"rimeline/views"
+)
+
+// fitting is limits rows that say the same of several planes and trackers.
+type fitting struct {
+	fit       views.Fit
+	row       *sizing.Limit
+	planes    []string
+	terminals []terminal
+}
+
+// fittings tells every limits row. Trackers of one inverter that say the same of a
+// plane are told once, and then planes that say the same of the same trackers.
+func (c *composer) fittings() []fitting {
+	type key struct{ plane, inverter, text string }
+	var all []fitting
+	at := map[key]int{}
+	for i := range c.r.Limits {
+		row := &c.r.Limits[i]
+		f := fitting{fit: c.fit(row), row: row, planes: []string{row.Plane}}
+		k := key{row.Plane, row.Inverter, fitText(f.fit, row)}
+		j, known := at[k]
+		if !known {
+			j = len(all)
+			at[k] = j
+			all = append(all, f)
+		}
+		all[j].terminals = append(all[j].terminals, terminal{inverter: row.Inverter, tracker: row.Tracker})
+	}
+	var merged []fitting
+	for _, f := range all {
+		j := slices.IndexFunc(merged, func(m fitting) bool {
+			return fitText(m.fit, m.row) == fitText(f.fit, f.row) && slices.Equal(m.terminals, f.terminals)
+		})
+		if j < 0 {
+			merged = append(merged, f)
+			continue
+		}
+		merged[j].planes = append(merged[j].planes, f.planes...)
+	}
+	for i := range merged {
+		merged[i].fit.Where = c.where(merged[i])
+	}
+	return merged
+}
+
+// fitText is everything a fit says, and the working behind it.
+func fitText(f views.Fit, row *sizing.Limit) string {
+	var b strings.Builder
+	b.WriteString(f.Range)
+	for _, s := range f.Reasons {
+		b.WriteString("\x00" + s)
+	}
+	for _, s := range row.Steps {
+		b.WriteString("\x00" + s.Symbol + s.WithNumbers)
+	}
+	return b.String()
+}
+
+// where names planes and trackers: "South plane on tracker t1", "South and west
+// planes on trackers t1 and t2".
+func (c *composer) where(f fitting) string {
+	planes := c.plane(f.planes[0])
+	if len(f.planes) > 1 {
+		words := slices.Clone(f.planes)
+		if slices.IndexFunc(f.planes, func(id string) bool { return !isWord(id) }) < 0 {
+			planes = list(words) + " planes"
+		} else {
+			for i, id := range words {
+				words[i] = c.plane(id)
+			}
+			planes = list(words)
+		}
+	}
+	where := capital(planes) + " on " + strings.Replace(c.terminals(f.terminals), " and ", " or ", 1)
+	if v := c.inverterByID(f.row.Inverter); v != nil && v.Quantity > 1 {
+		where += " of each of the " + counted(v.Quantity, "inverter", "inverters")
+	}
+	return where
+}
+
+// fit tells one limits row.
+func (c *composer) fit(row *sizing.Limit) views.Fit {
+	f := views.Fit{Range: c.rangeOf(row)}
+	f.Reasons = append(f.Reasons, c.ceilingSentence(row))
+	if s := c.fewestSentence(row); s != "" {
+		f.Reasons = append(f.Reasons, s)
+	}
+	if s := c.stringsSentence(row); s != "" {
+		f.Reasons = append(f.Reasons, s)
+	}
+	for _, s := range c.doubts(row) {
+		f.Open = true
+		f.Reasons = append(f.Reasons, s)
+	}
+	return f
+}
+
+// fewest returns the greater of the two minima, and whether the start sets it; ok is
+// false where no number of modules reaches the window.
+func fewest(row *sizing.Limit) (n int64, byStart, ok bool) {
+	if row.MinModules == nil {
+		return 0, false, false
+	}
+	n = *row.MinModules
+	if row.MinModulesStart != nil && *row.MinModulesStart > n {
+		return *row.MinModulesStart, true, true
+	}
+	return n, false, true
+}
+
+// rangeOf tells how many modules in series and how many strings.
+func (c *composer) rangeOf(row *sizing.Limit) string {
+	low, _, ok := fewest(row)
+	switch {
+	case !ok || row.MaxModules == 0 || low > row.MaxModules:
+		return "no number of modules in series fits"
+	case row.MaxStrings == 0:
+		return span(low, row.MaxModules) + " in series, but no string"
+	}
+	return span(low, row.MaxModules) + " in series, up to " + stringsOf(row.MaxStrings)
+}
+
+func span(low, high int64) string {
+	if low == high {
+		return "exactly " + modules(low)
+	}
+	return strconv.FormatInt(low, 10) + " to " + modules(high)
+}
+
+// ceilingName is what a limit of the ceiling is called in a sentence.
+func (c *composer) ceilingName(from string) string {
+	if from != "structure" {
+		return from
+	}
+	switch c.d.Site.Structure {
+	case design.StructureDwelling:
+		return "dwelling"
+	case design.StructureGround:
+		return "ground mounting"
+	}
+	return "building"
+}
+
+// ceilingSentence tells the ceiling, whose it is and where it would be met.
+func (c *composer) ceilingSentence(row *sizing.Limit) string {
+	var names []string
+	for _, e := range row.Ceiling {
+		if e.Governs {
+			names = append(names, c.ceilingName(e.From))
+		}
+	}
+	whose := ""
+	switch {
+	case len(names) == 1:
+		whose = " (the " + names[0] + "'s)"
+	case len(names) > 1:
+		whose = " (" + list(names) + " alike)"
+	}
+	s := "The ceiling is " + statedIn(row.VoltageCeilingV, "V") + whose
+	switch {
+	case row.MaxModules == 0:
+		return s + "; a single module exceeds it at the coldest."
+	case row.ReachedAtC == nil && c.byTable():
+		return s + "; " + modules(row.MaxModules) + " keep under it by the table."
+	case row.ReachedAtC == nil:
+		return s + "; " + modules(row.MaxModules) + " would meet it only below " + degrees(quantity.Int(-60), quantity.Nearest) + "."
+	case row.MaxModules == 1:
+		return s + "; 1" + nbsp + "module " + c.reachedWords(*row.ReachedAtC) + "."
+	}
+	return s + "; " + modules(row.MaxModules) + " " + c.reachedByMany(*row.ReachedAtC) + "."
+}
+
+func (c *composer) reachedByMany(at quantity.Exact) string {
+	words := c.reachedWords(at)
+	for _, verb := range []string{"keeps ", "meets "} {
+		if rest, found := strings.CutPrefix(words, verb); found {
+			return verb[:len(verb)-2] + " " + rest
+		}
+	}
+	return words
+}
+
+// fewestSentence tells what sets the lower end of the range.
+func (c *composer) fewestSentence(row *sizing.Limit) string {
+	low, byStart, ok := fewest(row)
+	t, _ := c.trackerByID(row.Inverter, row.Tracker)
+	v := c.inverterByID(row.Inverter)
+	if t == nil || v == nil {
+		return ""
+	}
+	if !ok {
+		return "On the hottest roof a module's operating voltage is not above zero, so no string reaches the tracker's window."
+	}
+	short := "leave the tracker's window, " + statedIn(t.MPPTMinV, "V") + ", on the hottest roof"
+	if byStart && v.StartVoltageV != nil {
+		short = "not start a hot inverter, which takes " + statedIn(*v.StartVoltageV, "V")
+	}
+	if low > row.MaxModules {
+		return "At least " + modules(low) + " are needed, or the string would " + short + "; at most " + strconv.FormatInt(row.MaxModules, 10) + " stay under the ceiling."
+	}
+	if low <= 1 {
+		return ""
+	}
+	return "Fewer than " + strconv.FormatInt(low, 10) + " would " + short + "."
+}
+
+// stringsSentence tells what sets the number of strings where it is not the inputs alone.
+func (c *composer) stringsSentence(row *sizing.Limit) string {
+	t, _ := c.trackerByID(row.Inverter, row.Tracker)
+	if t == nil {
+		return ""
+	}
+	switch {
+	case row.MaxStringsFrom == "short-circuit" && row.MaxStrings == 0:
+		return "A single string's short-circuit current is more than the tracker or one of its inputs withstands."
+	case row.MaxStringsFrom == "short-circuit" && t.MaxShortCircuitA != nil:
+		return "The tracker's short-circuit limit, " + statedIn(*t.MaxShortCircuitA, "A") + ", permits fewer strings than its " + counted(t.Inputs, "input", "inputs") + "."
+	case row.MaxStringsFrom == "inputs":
+		return ""
+	}
+	return ""
+}
+
+// doubts tells what keeps a row from being confirmed.
+func (c *composer) doubts(row *sizing.Limit) []string {
+	var words []string
+	if row.MaxStringsFrom == "inputs-unconfirmed" {
+		words = append(words, "The number of strings is unconfirmed: the tracker's short-circuit limit is not stated, so only its inputs are counted.")
+	}
+	if c.d.VoltageMethod == design.MethodWeather {
+		words = append(words, "Unconfirmed: the cold voltage is by the weather method.")
+	}
+	p := c.planeByID(row.Plane)
+	if p == nil {
+		return words
+	}
+	for i := range c.d.Modules {
+		if c.d.Modules[i].ID != p.Module {
+			continue
+		}
+		var asked []string
+		for _, q := range c.r.Questions {
+			if name := c.call(q.Pointer); q.Unsafe && strings.HasPrefix(q.Pointer, "/modules/"+strconv.Itoa(i)+"/") && !slices.Contains(asked, name) {
+				asked = append(asked, name)
+			}
+		}
+		if len(asked) > 0 {
+			words = append(words, "Unconfirmed while the question about "+list(asked)+" is open.")
+		}
+	}
+	return words
+}
