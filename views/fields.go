@@ -63,9 +63,10 @@ type Asked struct {
 	Value    string // JSON of the value that it was asked about
 	Question string // "" where the question is closed by the reason
 	Why      string
-	Effect   string // what it keeps unconfirmed
-	Earlier  string // a reason that was given for another value, "" if none
-	Reason   string // as typed
+	Effect   string        // what it keeps unconfirmed
+	Earlier  string        // a reason that was given for another value, "" if none
+	Kept     []HiddenField // the earlier reason's own fields
+	Reason   string        // as typed
 }
 
 // HiddenField is a field that the page keeps without showing it.
@@ -76,6 +77,7 @@ type Button struct {
 	Do     string // what, as the server reads it: "add /modules"
 	Words  string
 	Spoken string // words for who cannot see where it stands
+	Focus  bool   // takes the focus when the page opens
 }
 
 // describedBy are the attributes of an input that lead to its hint, fault and twin.
