@@ -1,6 +1,7 @@
 package quantity
 
 import (
+	"bytes"
 	"errors"
 	"fmt"
 	"math/big"
@@ -167,7 +168,13 @@ func (x Exact) AppendJSON(dst []byte) []byte {
 		}
 		places = x.placesFor(SignificantDigits)
 	}
-	return x.appendRounded(dst, places, Nearest, finite)
+	start := len(dst)
+	dst = x.appendRounded(dst, places, Nearest, finite)
+	if !finite && places > 0 {
+		// As in appendSignificant, a rounding to …0 needs no zeros. Rounded up, it may have one digit too many.
+		return append(dst[:start], bytes.TrimSuffix(bytes.TrimRight(dst[start:], "0"), []byte("."))...)
+	}
+	return dst
 }
 
 // String returns the text of [Exact.AppendJSON].
