@@ -17,7 +17,7 @@ func (w *walk) valueAsked(o *object) Asked {
 	const name, label = "value_asked", "the value that was asked about"
 	n, sound := o.find(name)
 	if n == 0 {
-		o.missing(name, label, must, askedKinds)
+		o.missing(name, askedKinds, "Enter "+label)
 		return ""
 	}
 	asked, ok := w.appendAsked(nil, n, label)
@@ -34,7 +34,7 @@ func (r *reader) appendAsked(dst []byte, n int32, label string) (asked []byte, o
 	case isNumber:
 		x, err := quantity.Parse(v.text)
 		if err != nil {
-			r.tooLong(n, label, err)
+			r.tooLong(n, label)
 			return dst, false
 		}
 		return appendNumber(dst, x), true

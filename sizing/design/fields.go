@@ -2,7 +2,6 @@ package design
 
 import (
 	"cmp"
-	"errors"
 	"fmt"
 	"slices"
 	"strconv"
@@ -224,11 +223,9 @@ func (r *reader) again(n int32, name string) {
 	r.faultAt(n, quote(name)+" a second time", "each field once", fmt.Sprintf("The field %s stands here twice; keep one.", quote(name)))
 }
 
-// missing records that a field is left out, if it must not be.
-func (o *object) missing(name, label string, p presence, expected string) {
-	if p == must {
-		o.r.fault(o.last, o.pointer(name), "nothing", expected, "Enter "+label+".")
-	}
+// missing records that a field is left out which must not be.
+func (o *object) missing(name, expected, request string) {
+	o.r.fault(o.last, o.pointer(name), "nothing", expected, request+".")
 }
 
 // pointer returns the pointer of a field, there or not.
@@ -278,7 +275,9 @@ func listed(words []string, before string) string {
 func (o *object) text(name, label string, p presence) (text string, ok bool) {
 	n, sound := o.find(name)
 	if n == 0 {
-		o.missing(name, label, p, "a text")
+		if p == must {
+			o.missing(name, "a text", "Enter "+label)
+		}
 		return "", p == may
 	}
 	if o.r.nodes[n].kind != isText {
@@ -292,7 +291,7 @@ func (o *object) text(name, label string, p presence) (text string, ok bool) {
 func (o *object) named(name, label string) (text string, n int32, ok bool) {
 	n, sound := o.find(name)
 	if n == 0 {
-		o.missing(name, label, must, "a text that is not blank")
+		o.missing(name, "a text that is not blank", "Enter "+label)
 		return "", 0, false
 	}
 	v := &o.r.nodes[n]
@@ -312,7 +311,9 @@ func (o *object) named(name, label string) (text string, n int32, ok bool) {
 func (o *object) word(name, label string, allowed []string, absent string) string {
 	n, sound := o.find(name)
 	if n == 0 {
-		o.missing(name, label, absent == "", listed(allowed, "or"))
+		if absent == "" {
+			o.missing(name, listed(allowed, "or"), "Choose "+label)
+		}
 		return absent
 	}
 	word := o.r.word(n, label, allowed)
@@ -360,7 +361,9 @@ func (b bound) expected(unit string) string {
 func (o *object) number(name, label string, p presence, b bound) *quantity.Exact {
 	n, sound := o.find(name)
 	if n == 0 {
-		o.missing(name, label, p, b.expected(unitOf(name)))
+		if p == must {
+			o.missing(name, b.expected(unitOf(name)), "Enter "+label)
+		}
 		return nil
 	}
 	x := o.r.number(n, name, label, b)
@@ -379,7 +382,7 @@ func (r *reader) number(n int32, name, label string, b bound) *quantity.Exact {
 	}
 	x, err := quantity.Parse(v.text)
 	if err != nil {
-		r.tooLong(n, label, err)
+		r.tooLong(n, label)
 		return nil
 	}
 	unit := unitOf(name)
@@ -394,14 +397,11 @@ func (r *reader) number(n int32, name, label string, b bound) *quantity.Exact {
 	return r.keep(x)
 }
 
-func (r *reader) tooLong(n int32, label string, err error) {
-	if !errors.Is(err, quantity.ErrTooLong) {
-		// The scanner lets nothing else through; say it all the same rather than take a wrong number.
-		r.faultAt(n, r.describe(n), "a number", fmt.Sprintf("%s must be a number.", sentence(label)))
-		return
-	}
-	r.faultAt(n, r.describe(n), fmt.Sprintf("at most %d digits and an exponent from −%d to %d", quantity.MaxDigits, quantity.MaxExponent, quantity.MaxExponent),
-		fmt.Sprintf("%s is too long: a number has at most %d digits and an exponent from −%d to %d.", sentence(label), quantity.MaxDigits, quantity.MaxExponent, quantity.MaxExponent))
+// tooLong records a number beyond what is read, the only kind that the scanner
+// lets through and [quantity.Parse] does not.
+func (r *reader) tooLong(n int32, label string) {
+	limits := fmt.Sprintf("at most %d digits and an exponent from −%d to %d", quantity.MaxDigits, quantity.MaxExponent, quantity.MaxExponent)
+	r.faultAt(n, r.describe(n), limits, fmt.Sprintf("%s is too long: a number has %s.", sentence(label), limits))
 }
 
 // keep returns a pointer to x that costs no allocation of its own.
@@ -414,7 +414,9 @@ func (r *reader) keep(x quantity.Exact) *quantity.Exact {
 func (o *object) whole(name, label string, p presence, least int64) *int64 {
 	n, sound := o.find(name)
 	if n == 0 {
-		o.missing(name, label, p, wholeFrom(least))
+		if p == must {
+			o.missing(name, wholeFrom(least), "Enter "+label)
+		}
 		return nil
 	}
 	r, v := o.r, &o.r.nodes[n]
@@ -424,7 +426,7 @@ func (o *object) whole(name, label string, p presence, least int64) *int64 {
 	}
 	x, err := quantity.Parse(v.text)
 	if err != nil {
-		r.tooLong(n, label, err)
+		r.tooLong(n, label)
 		return nil
 	}
 	i, fits := x.Int64()
@@ -461,7 +463,9 @@ var temperatureUnits = []string{"°C", "°F"}
 func (o *object) temperature(name, label string, p presence, b bound) *Temperature {
 	n, sound := o.find(name)
 	if n == 0 {
-		o.missing(name, label, p, b.expected("°C"))
+		if p == must {
+			o.missing(name, b.expected("°C"), "Enter "+label)
+		}
 		return nil
 	}
 	r := o.r
@@ -503,7 +507,9 @@ func (o *object) temperature(name, label string, p presence, b bound) *Temperatu
 func (o *object) list(name, label string, p presence, what string) (first int32, sound bool) {
 	n, sound := o.find(name)
 	if n == 0 {
-		o.missing(name, label, p, "a list with at least one "+what)
+		if p == must {
+			o.missing(name, "a list with at least one "+what, "Enter at least one "+what)
+		}
 		return 0, p == may
 	}
 	v := &o.r.nodes[n]
@@ -522,7 +528,9 @@ func (o *object) list(name, label string, p presence, what string) (first int32,
 func (o *object) inner(name, label string, p presence) (inner object, ok bool) {
 	n, _ := o.find(name)
 	if n == 0 {
-		o.missing(name, label, p, "an object")
+		if p == must {
+			o.missing(name, "an object", "Enter "+label)
+		}
 		return inner, false
 	}
 	return inner, inner.open(o.r, n, label)

@@ -75,6 +75,7 @@ func begin(input []byte) (*scanner, *Fault) {
 		return nil, &Fault{Found: "text in UTF-16", Expected: "text in UTF-8", Detail: "Save the file with the encoding UTF-8: this one is in UTF-16."}
 	}
 	s := &scanner{src: strings.TrimPrefix(string(input), byteOrderMark)}
+	s.nodes = make([]node, 0, min(16+len(input)/20, 4096)) // designs have a value every 20 bytes or so
 	s.skipBetween()
 	if s.pos == len(s.src) {
 		return nil, &Fault{Found: "nothing", Expected: "a design", Detail: "The input is empty: a design document is expected."}

@@ -21,6 +21,7 @@ var (
 // ids are the identifiers of one list.
 type ids struct {
 	what     string // what they name: "module"
+	within   string // for trackers the inverter's id
 	known    map[string]int32
 	repeated map[string]bool
 	complete bool // every element has one, so that an id not among them is dangling
@@ -56,8 +57,11 @@ func (o *object) reference(name, label string, s *ids) (id string, index int32) 
 	case found && !s.repeated[id]:
 		return id, index
 	case !found && s.complete:
-		o.r.faultAt(n, quote(id), "the id of one of the "+s.what+"s",
-			fmt.Sprintf("No %s has the id %s.", s.what, quote(id)))
+		detail := fmt.Sprintf("No %s has the id %s.", s.what, quote(id))
+		if s.within != "" {
+			detail = fmt.Sprintf("Inverter %s has no %s with the id %s.", quote(s.within), s.what, quote(id))
+		}
+		o.r.faultAt(n, quote(id), "the id of one of the "+s.what+"s", detail)
 	}
 	return id, -1
 }
@@ -107,7 +111,7 @@ func (w *walk) format(o *object) {
 	n, _ := o.find("format")
 	switch {
 	case n == 0:
-		o.missing("format", `the format, "`+Format+`"`, must, quote(Format))
+		o.missing("format", quote(Format), "Enter the format, "+Format)
 	case w.nodes[n].kind != isText || w.nodes[n].text != Format:
 		w.faultAt(n, w.describe(n), quote(Format), fmt.Sprintf("Only documents of the format %s are read here.", Format))
 	}
@@ -279,7 +283,9 @@ func (u *coefficientUnits) find(word string) (CoefficientUnit, bool) {
 func (o *object) coefficient(name, label string, p presence, units coefficientUnits) *Coefficient {
 	n, sound := o.find(name)
 	if n == 0 {
-		o.missing(name, label, p, `{"value": …, "unit": …}`)
+		if p == must {
+			o.missing(name, `{"value": …, "unit": …}`, "Enter "+label)
+		}
 		return nil
 	}
 	r := o.r
@@ -292,7 +298,7 @@ func (o *object) coefficient(name, label string, p presence, units coefficientUn
 	x := inner.number("value", label, must, anyNumber)
 	un, unitSound := inner.find("unit")
 	if un == 0 {
-		inner.missing("unit", "the unit of "+label, must, units.listed)
+		inner.missing("unit", units.listed, "Choose the unit of "+label)
 	}
 	inner.close()
 	if un == 0 {
@@ -384,7 +390,7 @@ func (w *walk) inverter(n int32) {
 
 func (w *walk) readTrackers(parent *object, v *Inverter, s *ids) {
 	first, sound := parent.list("trackers", "the trackers", must, "tracker")
-	*s = ids{what: "tracker", complete: sound && first != 0}
+	*s = ids{what: "tracker", within: v.ID, complete: sound && first != 0}
 	v.Trackers = make([]Tracker, w.count(first))
 	for n := first; n != 0; n = w.nodes[n].next {
 		w.tracker(&v.Trackers[w.nodes[n].index], s, n)
