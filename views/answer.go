@@ -55,11 +55,12 @@ type CheckKind struct {
 	Asks    string // the question it answers, in a sentence
 	Verdict Verdict
 	Checks  []Check
+	Rest    string // on the sheet: the checks of this kind that are not printed, "" if none
 }
 
 // Check is one judged rule, or several equal ones of different subjects.
 type Check struct {
-	Number   string // "7" or "7 to 9": the place in the result, for reference
+	Number   string // "7.2", for reference: the second case of the seventh kind
 	Anchor   string // id of the element
 	Verdict  Verdict
 	About    string
@@ -91,3 +92,11 @@ type Caution struct{ Title, Text string }
 
 // Row is one line of a two- or three-column table.
 type Row struct{ Name, Value, Note string }
+
+// orDash returns a dash for a cell of a table that has nothing to say.
+func orDash(s string) string {
+	if s == "" {
+		return "–"
+	}
+	return s
+}

@@ -2,20 +2,19 @@ package views
 
 // WorkingPage is the whole arithmetic of one design on one page that prints.
 type WorkingPage struct {
-	Title     string
-	Verdict   Verdict
-	Headline  string
-	Tally     string
-	Basis     []Row // site, code, method, allowances
-	Rounding  string
-	Coldest   []string
-	Symbols   []Symbol
-	Ceilings  []Ceiling
-	Limits    []LimitWorking
-	Kinds     []CheckKind // in the order of the method
-	Questions []Question
-	Cautions  []Caution
-	// NotChecked names what no check of this page covers.
+	Title      string
+	Verdict    Verdict
+	Headline   string
+	Tally      string
+	Basis      []Row // site, code, method, allowances
+	Rounding   string
+	Coldest    []string
+	Symbols    []Symbol
+	Ceilings   []Ceiling
+	Limits     []LimitWorking
+	Kinds      []CheckKind // in the order of the method
+	Questions  []Question
+	Answered   []Row // questions that a reason closed
 	NotChecked []string
 }
 

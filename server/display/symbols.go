@@ -1,0 +1,127 @@
+package display
+
+import (
+	"strings"
+	"unicode"
+
+	"rimeline/sizing/working"
+	"rimeline/views"
+)
+
+// symbols explain every symbol of the working, in the order in which a reader meets them.
+var symbols = []views.Symbol{
+	{Symbol: "Tcold", Meaning: "coldest temperature of the site, °C; cells are as cold as the air at first light"},
+	{Symbol: "Tcold,F", Meaning: "the same as stated, °F"},
+	{Symbol: "Thot", Meaning: "hottest air temperature of the site, °C"},
+	{Symbol: "Thot,F", Meaning: "the same as stated, °F"},
+	{Symbol: "rise", Meaning: "how much hotter than the air a cell of the plane gets, °C"},
+	{Symbol: "rise,F", Meaning: "the same as stated, °F"},
+	{Symbol: "Tcell", Meaning: "cell temperature on the hottest roof, °C"},
+	{Symbol: "Pmax", Meaning: "module's power at STC, W"},
+	{Symbol: "Voc", Meaning: "module's open-circuit voltage at STC, V"},
+	{Symbol: "Isc", Meaning: "module's short-circuit current at STC, A"},
+	{Symbol: "Vmp", Meaning: "module's operating voltage at STC, V"},
+	{Symbol: "Imp", Meaning: "module's operating current at STC, A"},
+	{Symbol: "βVoc", Meaning: "temperature coefficient of Voc, in the unit in which it is stated"},
+	{Symbol: "βVmp", Meaning: "temperature coefficient of Vmp"},
+	{Symbol: "γPmax", Meaning: "temperature coefficient of Pmax"},
+	{Symbol: "αIsc", Meaning: "temperature coefficient of Isc"},
+	{Symbol: "α", Meaning: "current coefficient used where none is stated, %/°C"},
+	{Symbol: "Fcold", Meaning: "factor of the cold-voltage table's row"},
+	{Symbol: "acold", Meaning: "allowance onto the cold voltage, %"},
+	{Symbol: "ahot", Meaning: "allowance off the hot operating voltage, %"},
+	{Symbol: "Vceiling", Meaning: "the lowest of the limits under which the cold voltage must stay, V"},
+	{Symbol: "Vinverter,max", Meaning: "inverter's maximum DC voltage, V"},
+	{Symbol: "Vmodule,max", Meaning: "module's maximum system voltage, V"},
+	{Symbol: "Vstructure,max", Meaning: "the code's limit on or in the structure, V"},
+	{Symbol: "Voc(Tcold)", Meaning: "one module's open-circuit voltage on the coldest morning before the allowance, V"},
+	{Symbol: "Voc,cold", Meaning: "one module's open-circuit voltage on the coldest morning, V"},
+	{Symbol: "Vcold", Meaning: "the string's open-circuit voltage on the coldest morning, V"},
+	{Symbol: "Vcold,other", Meaning: "the same by the method that was not chosen, V"},
+	{Symbol: "ΔVcold", Meaning: "how far the cold voltages of strings in parallel lie apart, V"},
+	{Symbol: "Tceiling", Meaning: "temperature at which the string meets the ceiling, °C"},
+	{Symbol: "headroom", Meaning: "how much colder than the coldest that is, or is asked to be, °C"},
+	{Symbol: "Vmp(Tcell)", Meaning: "one module's operating voltage in the hottest cells before the allowance, V"},
+	{Symbol: "Vmp,hot", Meaning: "one module's operating voltage in the hottest cells, V"},
+	{Symbol: "Vhot", Meaning: "the string's operating voltage in the hottest cells, V"},
+	{Symbol: "Vhot,steeper", Meaning: "the same with the current coefficient counted into the slope, V"},
+	{Symbol: "Voc,hot", Meaning: "one module's open-circuit voltage in the hottest cells, V"},
+	{Symbol: "Voc,hot,string", Meaning: "the string's open-circuit voltage in the hottest cells, V"},
+	{Symbol: "Vmp,cold", Meaning: "one module's operating voltage on the coldest morning, V"},
+	{Symbol: "Vmp,cold,string", Meaning: "the string's operating voltage on the coldest morning, V"},
+	{Symbol: "Vmppt,min", Meaning: "lower limit of the tracker's window, V"},
+	{Symbol: "Vmppt,max", Meaning: "upper limit of the tracker's window, V"},
+	{Symbol: "Vstart", Meaning: "voltage at which the inverter starts, V"},
+	{Symbol: "n", Meaning: "modules in series"},
+	{Symbol: "nmax", Meaning: "the most modules whose cold voltage does not exceed the ceiling"},
+	{Symbol: "nmin", Meaning: "the fewest modules whose hot voltage reaches the window"},
+	{Symbol: "s", Meaning: "strings in parallel"},
+	{Symbol: "Σs", Meaning: "strings on the tracker"},
+	{Symbol: "inputs", Meaning: "strings that can be landed on the tracker"},
+	{Symbol: "gain", Meaning: "gain of current on the plane, %"},
+	{Symbol: "Isc,marked", Meaning: "the highest short-circuit current marked on the module, A"},
+	{Symbol: "Isc,gain", Meaning: "short-circuit current of one string with the gain, A"},
+	{Symbol: "Imp,gain", Meaning: "operating current of one string with the gain, A"},
+	{Symbol: "ΣImp", Meaning: "operating current of all strings on the tracker, A"},
+	{Symbol: "ΣIsc", Meaning: "short-circuit current of all strings on the tracker by the chosen basis, A"},
+	{Symbol: "ΣImax", Meaning: "the same × 1.25, A"},
+	{Symbol: "Imp#", Meaning: "operating current of strings entry #, A"},
+	{Symbol: "Isc#", Meaning: "short-circuit current of strings entry # by the chosen basis, A"},
+	{Symbol: "Imax#", Meaning: "the same × 1.25, A"},
+	{Symbol: "Iback", Meaning: "current that the inverter can feed back, A"},
+	{Symbol: "Iback-feed", Meaning: "current that can flow backwards into one failed string, A"},
+	{Symbol: "Ifuse,min", Meaning: "the least rating of a string fuse, A"},
+	{Symbol: "Σmodules", Meaning: "modules strung on the plane"},
+	{Symbol: "positions", Meaning: "places for modules on the plane"},
+	{Symbol: "left over", Meaning: "places that stay empty"},
+	{Symbol: "ΣPmax", Meaning: "power at STC of all modules on the inverter, W"},
+}
+
+// symbolsIn explains the symbols that occur in steps.
+func symbolsIn(all ...[]working.Step) []views.Symbol {
+	used := map[string]bool{}
+	for _, steps := range all {
+		for _, s := range steps {
+			used[numberless(s.Symbol)] = true
+			for word := range strings.SplitSeq(s.Expression, " ") {
+				used[numberless(bare(word))] = true
+			}
+		}
+	}
+	var found []views.Symbol
+	for _, s := range symbols {
+		if used[s.Symbol] {
+			found = append(found, s)
+		}
+	}
+	return found
+}
+
+// bare returns a word of an expression without the brackets and commas around it.
+func bare(word string) string {
+	for {
+		was := word
+		for _, mark := range []string{"(", "⌊", "⌈", "min(", "max("} {
+			word = strings.TrimPrefix(word, mark)
+		}
+		word = strings.TrimRight(word, ",⌋⌉")
+		if strings.HasSuffix(word, ")") && strings.Count(word, "(") < strings.Count(word, ")") {
+			word = strings.TrimSuffix(word, ")")
+		}
+		if word == was {
+			return word
+		}
+	}
+}
+
+// numberless writes the number of a strings entry as "#": Imp2 is Imp#.
+func numberless(symbol string) string {
+	cut := strings.TrimRightFunc(symbol, unicode.IsDigit)
+	switch cut {
+	case "Imp", "Isc", "Imax":
+		if cut != symbol {
+			return cut + "#"
+		}
+	}
+	return symbol
+}
