@@ -1,6 +1,8 @@
 package stringing
 
 import (
+	"strconv"
+
 	"rimeline/sizing/quantity"
 	"rimeline/sizing/working"
 )
@@ -96,13 +98,13 @@ func (a *Array) unequalStrings(t *Tracker) working.Check {
 	check := working.Check{ID: "unequal-strings", About: a.about(t), Unit: "V", Cites: []string{a.Book.Instructions.Cite}}
 	var rules []working.Rule
 	first := t.entries[0]
-	highest, lowest := first.vocCold, first.vocCold
+	highest, lowest := first, first
 	for _, e := range t.entries[1:] {
-		if highest.Value().Less(e.vocCold.Value()) {
-			highest = e.vocCold
+		if highest.vocCold.Value().Less(e.vocCold.Value()) {
+			highest = e
 		}
-		if e.vocCold.Value().Less(lowest.Value()) {
-			lowest = e.vocCold
+		if e.vocCold.Value().Less(lowest.vocCold.Value()) {
+			lowest = e
 		}
 		rules = append(rules,
 			rule(working.Unconfirmed, "strings-unequal", working.Exceeds(first.vocCold, e.vocCold)),
@@ -114,9 +116,15 @@ func (a *Array) unequalStrings(t *Tracker) working.Check {
 		}
 	}
 	if len(t.entries) > 1 {
-		difference := working.Named("ΔVcold", "V", highest.Minus(lowest))
+		high, low := highest.numberedCold(), lowest.numberedCold()
+		difference := working.Named("ΔVcold", "V", high.Minus(low))
 		check.Value, check.Limit = valueOf(difference), new(quantity.Int(0))
-		check.Steps = shown(highest, lowest, difference)
+		check.Steps = shown(high, low, difference)
 	}
 	return judged(check, rules)
+}
+
+// numberedCold returns the entry's cold voltage under a symbol of its own.
+func (e *entry) numberedCold() *working.Term {
+	return working.Named("Vcold"+strconv.Itoa(e.index+1), "V", e.vocCold.Formula())
 }

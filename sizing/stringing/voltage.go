@@ -66,12 +66,12 @@ func moved(rated *working.Term, c *design.CoefficientTerm, distance *working.Ter
 // wherever both can be had. The linear coefficient is on the safe side of the
 // diode model by up to 0.23 % down to −40 °C (De Soto et al. 2006, computed).
 func (a *Array) setCold(v *plane) {
-	byCoefficient, coefficientSteps := a.allowed("Voc,cold", "Voc(Tcold)", a.coldByCoefficient(v, a.terms.Coldest))
+	byCoefficient, coefficientSteps := a.allowed("Voc,cold", "Voc,Tcold", a.coldByCoefficient(v, a.terms.Coldest))
 	var byTable *working.Term
 	var tableSteps []*working.Term
 	if row, ok := a.Book.ColdFactorAt(a.terms.Coldest.Value()); ok && v.datasheet.CrystallineSilicon() {
 		v.row = &row
-		byTable, tableSteps = a.allowed("Voc,cold", "Voc(Tcold)", v.coldByRow(row))
+		byTable, tableSteps = a.allowed("Voc,cold", "Voc,Tcold", v.coldByRow(row))
 	}
 	coefficientSteps = append([]*working.Term{a.terms.Coldest}, coefficientSteps...)
 	tableSteps = append([]*working.Term{a.terms.Coldest}, tableSteps...)
@@ -169,7 +169,7 @@ func (a *Array) setHot(v *plane) {
 	if a.terms.HotPct == nil {
 		v.vmpHot = working.Named("Vmp,hot", "V", hot)
 	} else {
-		v.hotStep = working.Named("Vmp(Tcell)", "V", hot)
+		v.hotStep = working.Named("Vmp,Tcell", "V", hot)
 		v.vmpHot = working.Named("Vmp,hot", "V", v.hotStep.Times(a.hotAllowance()))
 	}
 	v.vocHot = working.Named("Voc,hot", "V", moved(v.terms.Voc, v.terms.VocCoeff, at25(v.cellHot)))
