@@ -41,7 +41,7 @@ func (a *Array) backFeed(e *entry, t *Tracker) working.Check {
 				rule(working.Outside, "no-standard-fuse", required, a.noRating(least, limit)))
 		}
 	}
-	check = judged(check, a.doubtRules(rules, e.plane, check.ID))
+	check = judged(check, a.trackerDoubts(rules, t, check.ID)) // it rests on the other strings' modules too
 	if sum.Value().IsZero() {
 		check.Reasons = append(check.Reasons, working.Reason{Code: "not-needed"})
 	}
