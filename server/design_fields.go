@@ -10,6 +10,7 @@ type inquiry struct {
 	choices [][2]string // value and words, for what is chosen from a list
 	long    bool        // several lines
 	asked   bool        // the engine may have a question about it
+	may     bool        // it may be left empty, and stands among those that may not
 }
 
 var (
@@ -51,8 +52,8 @@ var (
 		{"other", "Another technology"},
 	}
 	methodChoices = [][2]string{
-		{"coefficient", "By the datasheet's coefficient"},
-		{"table", "By the code's table of factors"},
+		{"coefficient", "Datasheet coefficient"},
+		{"table", "Table of the code"},
 	}
 	basisChoices = [][2]string{
 		{"maximum", "Isc with gain × 1.25"},
@@ -78,21 +79,21 @@ var (
 			hint: "The NEC points to the mean of the yearly extremes (ASHRAE); a record low is colder."},
 		{name: "hottest_c", label: "Hottest air temperature", width: "w3"},
 		{name: "hottest_basis", label: "Which statistic of heat", width: "w3", choices: hottestChoices},
-		{name: "station", label: "Weather station (optional)", width: "w4", hint: "Name and distance; it may lie lower than the roof."},
-		{name: "elevation_m", label: "Elevation (optional)"},
+		{name: "station", label: "Weather station", may: true, width: "w4", hint: "Name and distance; it may lie lower than the roof."},
+		{name: "elevation_m", label: "Elevation", may: true},
 	}
 	codeInquiries = []inquiry{
 		{name: "rulebook", label: "Code edition in force", width: "w2", choices: rulebookChoices,
 			hint: "The one the authority enforces here."},
 		{name: "voltage_method", label: "Cold voltage", width: "w2", choices: methodChoices,
 			hint: "The other is worked out beside it."},
-		{name: "short_circuit_basis", label: "Held against Isc limits", width: "w2", choices: basisChoices,
-			hint: "Under × 1.25 more than the limit is outside."},
+		{name: "short_circuit_basis", label: "Compared with Isc limits", width: "w2", choices: basisChoices,
+			hint: "× 1.25 is the stricter one."},
 	}
 
 	moduleInquiries = []inquiry{
-		{name: "maker", label: "Maker (optional)"},
-		{name: "model", label: "Model and bin (optional)"},
+		{name: "maker", label: "Maker", may: true},
+		{name: "model", label: "Model and bin", may: true},
 		{name: "technology", label: "Cells", choices: technologyChoices},
 		{name: "pmax_w", label: "Rated power", symbol: "Pmax", asked: true},
 		{name: "voc_v", label: "Open-circuit voltage", symbol: "Voc", asked: true},
@@ -102,10 +103,10 @@ var (
 		{name: "max_system_voltage_v", label: "Max. system voltage"},
 		{name: "voc_temp_coeff", label: "Temperature coefficient of Voc", symbol: "β", width: "w3", asked: true,
 			hint: "Negative. Take the unit from the datasheet."},
-		{name: "pmax_temp_coeff", label: "… of Pmax (optional)", symbol: "γ", width: "w3",
+		{name: "pmax_temp_coeff", label: "Temperature coefficient of Pmax", may: true, symbol: "γ", width: "w3",
 			hint: "Negative. Stands in where none is stated for Vmp."},
-		{name: "isc_temp_coeff", label: "… of Isc (optional)", symbol: "α", width: "w3", asked: true, hint: "Positive, as a rule."},
-		{name: "max_series_fuse_a", label: "Max. series fuse (optional)", width: "w3",
+		{name: "isc_temp_coeff", label: "Temperature coefficient of Isc", may: true, symbol: "α", width: "w3", asked: true, hint: "Positive, as a rule."},
+		{name: "max_series_fuse_a", label: "Max. series fuse", may: true, width: "w3",
 			hint: "Without it back-feed cannot be confirmed."},
 	}
 	moduleMore = []inquiry{
@@ -119,11 +120,11 @@ var (
 	}
 
 	inverterInquiries = []inquiry{
-		{name: "maker", label: "Maker (optional)"},
-		{name: "model", label: "Model (optional)"},
+		{name: "maker", label: "Maker", may: true},
+		{name: "model", label: "Model", may: true},
 		{name: "quantity", label: "How many of them"},
 		{name: "max_dc_voltage_v", label: "Max. DC voltage", hint: "The absolute one, not the MPPT window's."},
-		{name: "start_voltage_v", label: "Start voltage (optional)"},
+		{name: "start_voltage_v", label: "Start voltage", may: true},
 	}
 	inverterMore = []inquiry{
 		{name: "max_dc_power_w", label: "Max. DC power"},
@@ -151,9 +152,9 @@ var (
 		{name: "id", label: "Name of the plane"},
 		{name: "positions", label: "Places for modules"},
 		{name: "hot_cell_rise_c", label: "Cell above air when hot", hint: "20 to 35 °C on roofs, by the mounting."},
-		{name: "tilt_deg", label: "Tilt (optional)"},
-		{name: "azimuth_deg", label: "Azimuth (optional)", hint: "From north, clockwise."},
-		{name: "current_gain_pct", label: "Current gain (optional)", hint: "Bifacial or snow, onto Isc and Imp."},
+		{name: "tilt_deg", label: "Tilt", may: true},
+		{name: "azimuth_deg", label: "Azimuth", may: true, hint: "From north, clockwise."},
+		{name: "current_gain_pct", label: "Current gain", may: true, hint: "Bifacial or snow, onto Isc and Imp."},
 	}
 	planeModule = inquiry{name: "module", label: "Module", width: "w6"}
 

@@ -348,6 +348,7 @@ func (b *pageBuilder) field(at string, q inquiry) views.Field {
 		Unit:   form.UnitOf(pointer),
 		Whole:  kind == form.Count,
 		Long:   q.long,
+		May:    q.may,
 		Width:  q.width,
 		Fault:  strings.Join(b.marked[pointer], " "),
 	}
@@ -588,7 +589,6 @@ var labels = func() map[string]string {
 			if strings.HasPrefix(q.label, "MPPT") || strings.HasPrefix(q.label, "NOCT") {
 				label = q.label
 			}
-			label = strings.TrimSuffix(label, " (optional)")
 			if q.symbol != "" && !strings.HasSuffix(q.name, "_coeff") {
 				label = q.symbol
 			}

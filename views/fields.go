@@ -24,6 +24,7 @@ type Field struct {
 	Unit    string // printed beside it
 	Whole   bool   // a whole number
 	Long    bool   // several lines of text
+	May     bool   // may be left empty, and stands among those that may not
 	Focus   bool   // takes the focus when the page opens
 	Width   string // a CSS class of how wide it may be: w2, w3, w4, w6 of six columns
 	Choices []Choice
