@@ -335,12 +335,17 @@ func (o *object) voltageCoefficient(name, label string, p presence, rated *quant
 		return c
 	}
 	percent := c.PercentOf(or(rated, quantity.Exact{}))
-	if !percent.Less(steepestPct) && !flattestPct.Less(percent) {
+	away := quantity.Down // so that the rounded number lies outside the range too
+	switch {
+	case percent.Less(steepestPct):
+	case flattestPct.Less(percent):
+		away = quantity.Up
+	default:
 		return c
 	}
 	found := amount(c.Value.String(), c.UnitText)
 	if c.Unit != PercentPerC {
-		text, exact := percent.Fixed(4, quantity.Nearest)
+		text, exact := percent.Fixed(4, away)
 		about := ", which is "
 		if !exact {
 			about = ", which is about "
