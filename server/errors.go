@@ -6,12 +6,13 @@ import (
 	"encoding/json"
 	"errors"
 	"fmt"
-	"html"
 	"net/http"
 	"strconv"
 	"strings"
 
 	"github.com/go-chi/chi/v5"
+
+	"rimeline/views"
 )
 
 // statusError is an error that knows its status and what the visitor may read.
@@ -72,7 +73,7 @@ func describe(err error) (status int, message string, header map[string]string) 
 		return statusClientGone, "The request was given up.", nil
 	}
 	return http.StatusInternalServerError,
-		"Something failed on our side. Nothing that you typed was judged; please try again.", nil
+		"What was sent could not be judged, and nothing was answered in its place. Please try again.", nil
 }
 
 // serveError is the only place where an error becomes an answer: it chooses the
@@ -94,31 +95,34 @@ func (s *Server) serveError(w http.ResponseWriter, r *http.Request, err error) {
 	for name, value := range header {
 		w.Header().Set(name, value)
 	}
-	w.Header().Set("Cache-Control", "no-store")
 	if strings.HasPrefix(r.URL.Path, "/api/") {
 		writeProblem(w, problem{Status: status, Detail: message, RequestID: id})
 		return
 	}
-	body := plainErrorPage(status, message, id)
-	w.Header().Set("Content-Type", "text/html; charset=utf-8")
-	w.Header().Set("Content-Length", strconv.Itoa(len(body)))
-	w.WriteHeader(status)
-	_, _ = w.Write([]byte(body))
-}
-
-// plainErrorPage needs nothing that can fail.
-func plainErrorPage(status int, message, id string) string {
-	title := statusTitle(status)
-	return `<!doctype html><html lang="en"><head><meta charset="utf-8"><meta name="viewport" content="width=device-width">` +
-		`<title>` + title + ` – Rimeline</title></head><body><main><h1>` + title + `</h1><p>` + html.EscapeString(message) +
-		`</p><p>Request ` + html.EscapeString(id) + `</p><p><a href="/">To the start</a></p></main></body></html>`
-}
-
-func statusTitle(status int) string {
-	if status == statusClientGone {
-		return "Given up"
+	heading := failureHeading(status)
+	base := newBase(heading, "")
+	base.Scripts = nil
+	page := views.Failure(views.FailurePage{Base: base, Heading: heading, Message: message, RequestID: id})
+	if err := s.render(w, r, status, page); err != nil {
+		s.log.ErrorContext(r.Context(), "the page of an error failed too", "request_id", id, "error", err)
+		http.Error(w, message+"\n\nRequest "+id, status)
 	}
-	return http.StatusText(status)
+}
+
+// failureHeading says in ordinary words what a status means.
+func failureHeading(status int) string {
+	switch status {
+	case http.StatusNotFound:
+		return "There is nothing here"
+	case http.StatusRequestEntityTooLarge:
+		return "That was too long"
+	case http.StatusServiceUnavailable:
+		return "Too busy at the moment"
+	}
+	if status >= http.StatusInternalServerError {
+		return "Something failed on our side"
+	}
+	return "The request was not carried out"
 }
 
 // problem is an error of the JSON interface (RFC 9457). Its type is about:blank:
@@ -133,7 +137,7 @@ type problem struct {
 }
 
 func writeProblem(w http.ResponseWriter, p problem) {
-	p.Type, p.Title = "about:blank", statusTitle(p.Status)
+	p.Type, p.Title = "about:blank", http.StatusText(p.Status)
 	var body bytes.Buffer
 	enc := json.NewEncoder(&body)
 	enc.SetEscapeHTML(false) // the faults quote what was found
