@@ -20,6 +20,8 @@ func Size(d *design.Design) *Result {
 		return r
 	}
 	r.Strings = strungRows(a)
+	trackers, units := a.Trackers(), a.Units()
+	r.Checks = make([]working.Check, 0, 10*len(d.Strings)+6*len(trackers)+len(d.Planes)+len(units))
 
 	// A check about a tracker, plane or unit counts for every strings entry on it.
 	judge := func(checks []working.Check, entries ...int) {
@@ -31,7 +33,6 @@ func Size(d *design.Design) *Result {
 			}
 		}
 	}
-	trackers := a.Trackers()
 	for i := range d.Strings {
 		judge(a.StringChecks(i, trackerOf(trackers, i)), i)
 	}
@@ -47,7 +48,6 @@ func Size(d *design.Design) *Result {
 		}
 		judge([]working.Check{a.Places(p)}, on...)
 	}
-	units := a.Units()
 	for i := range units {
 		if c, ok := a.DCPower(&units[i]); ok {
 			judge([]working.Check{c}, units[i].Strings()...)

@@ -79,7 +79,7 @@ var coldestReported = quantity.Int(-60)
 // coefficient, solved from n × (1 + acold ÷ 100) × (Voc + β × (T − 25)) = Vceiling.
 func (a *Array) meets(v *plane, n, ceiling *working.Term) *working.Term {
 	share := ceiling.Over(times(n, a.coldAllowance()))
-	t := working.Whole(25).Plus(share.Minus(v.terms.Voc).Over(v.terms.VocCoeff.PerC(v.terms.Voc)))
+	t := working.Whole(25).Plus(share.Minus(v.terms.Voc).Over(v.fallsC))
 	return working.Named("Tceiling", "°C", t)
 }
 
@@ -190,10 +190,10 @@ func (a *Array) headroom(e *entry) working.Check {
 // coldest temperature less the wished headroom, which is the same as meeting it
 // less than that headroom away.
 func (a *Array) lacksHeadroom(v *plane, n, limit *working.Term) *working.Condition {
-	colder := a.terms.Coldest.Minus(a.terms.Headroom)
 	if !a.byTable() {
-		return working.Exceeds(times(n.Times(moved(v.terms.Voc, v.terms.VocCoeff, at25(colder))), a.coldAllowance()), limit)
+		return working.Exceeds(n.Times(v.colderVoc), limit)
 	}
+	colder := a.terms.Coldest.Minus(a.terms.Headroom)
 	row, ok := a.Book.ColdFactorAt(colder.Value())
 	if !ok { // beyond the table the last row tells whether any breaks
 		row = a.Book.ColdFactors[len(a.Book.ColdFactors)-1]

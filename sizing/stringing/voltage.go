@@ -25,6 +25,12 @@ type plane struct {
 	vmpCold *working.Term // V
 	hotStep *working.Term // vmpHot before the allowance; nil where there is none
 	slope   slopeOfVmp
+	steeper *working.Term // V, hot, with the slope made steeper by the current coefficient; nil unless the slope is a stand-in
+	fallsC  *working.Term // V/°C, the Voc coefficient
+
+	// What conditions compare, by the module; the string's count comes on top.
+	heldHot, heldSteeper, heldCold held
+	colderVoc                      *working.Term // V, by coefficient at the coldest temperature less the wished headroom
 
 	isc, imp *working.Term // A, with current gain, and the highest marked Isc
 }
@@ -66,6 +72,9 @@ func moved(rated *working.Term, c *design.CoefficientTerm, distance *working.Ter
 // wherever both can be had. The linear coefficient is on the safe side of the
 // diode model by up to 0.23 % down to −40 °C (De Soto et al. 2006, computed).
 func (a *Array) setCold(v *plane) {
+	v.fallsC = v.terms.VocCoeff.PerC(v.terms.Voc)
+	colder := a.terms.Coldest.Minus(a.terms.Headroom)
+	v.colderVoc = times(moved(v.terms.Voc, v.terms.VocCoeff, at25(colder)), a.coldAllowance())
 	byCoefficient, coefficientSteps := a.allowed("Voc,cold", "Voc,Tcold", a.coldByCoefficient(v, a.terms.Coldest))
 	var byTable *working.Term
 	var tableSteps []*working.Term
@@ -159,6 +168,38 @@ func (v *plane) operating(distance *working.Term) *working.Term {
 	return vmp.Plus(v.slope.perC.Times(distance))
 }
 
+// held is a voltage with the scale that both sides of its comparison are multiplied
+// by, so that no input stands below the line; scale is nil for 1.
+type held struct{ voltage, scale *working.Term }
+
+// below returns the condition that n × the voltage is below a limit.
+func (h held) below(limit, n *working.Term) *working.Condition {
+	return working.Exceeds(times(limit, h.scale), n.Times(h.voltage))
+}
+
+// exceeds returns the condition that n × the voltage exceeds a limit.
+func (h held) exceeds(n, limit *working.Term) *working.Condition {
+	return working.Exceeds(n.Times(h.voltage), times(limit, h.scale))
+}
+
+// scaledOperating returns (Vmp + slope × distance) × scale.
+func scaledOperating(vmp *working.Term, slope slopeOfVmp, distance *working.Term) held {
+	return held{times(vmp, slope.scale).Plus(slope.scaled.Times(distance)), slope.scale}
+}
+
+// less returns the slope less a loss, scaled by both scales.
+func (s slopeOfVmp) less(loss slopeOfVmp) slopeOfVmp {
+	scale := s.scale
+	if loss.scale != nil {
+		scale = times(loss.scale, s.scale)
+	}
+	return slopeOfVmp{
+		perC:   s.perC.Minus(loss.perC),
+		scaled: times(s.scaled, loss.scale).Minus(times(loss.scaled, s.scale)),
+		scale:  scale,
+	}
+}
+
 // setHot finds a module's voltages at cell temperature Thot + rise, and its
 // operating voltage on the coldest morning. The hot allowance (ageing, mismatch,
 // wire) is taken off the hot operating voltage alone.
@@ -174,6 +215,37 @@ func (a *Array) setHot(v *plane) {
 	}
 	v.vocHot = working.Named("Voc,hot", "V", moved(v.terms.Voc, v.terms.VocCoeff, at25(v.cellHot)))
 	v.vmpCold = working.Named("Vmp,cold", "V", v.operating(at25(a.terms.Coldest)))
+
+	v.heldHot = scaledOperating(v.terms.Vmp, v.slope, at25(v.cellHot))
+	v.heldHot.voltage = times(v.heldHot.voltage, a.hotAllowance())
+	v.heldCold = scaledOperating(v.terms.Vmp, v.slope, at25(a.terms.Coldest))
+	if v.slope.standIn {
+		slope := v.slope.less(v.currentLoss())
+		v.heldSteeper = scaledOperating(v.terms.Vmp, slope, at25(v.cellHot))
+		v.heldSteeper.voltage = times(v.heldSteeper.voltage, a.hotAllowance())
+		v.steeper = times(v.terms.Vmp.Plus(slope.perC.Times(at25(v.cellHot))), a.hotAllowance())
+	}
+}
+
+// defaultAlphaPct stands for a current coefficient that is not stated, in %/°C. Common practice for crystalline silicon.
+var defaultAlphaPct = quantity.Ratio(5, 100)
+
+// currentLoss returns α × Vmp ÷ 100, the part of the slope that a stand-in leaves
+// out: 0.05 %/°C where the current coefficient is not stated, 0 where it is negative.
+func (v *plane) currentLoss() slopeOfVmp {
+	vmp, c := v.terms.Vmp, v.terms.IscCoeff
+	switch {
+	case c == nil:
+		perC := working.Looked("α", defaultAlphaPct).Times(vmp).Over(working.Whole(100))
+		return slopeOfVmp{perC: perC, scaled: perC}
+	case c.Term.Value().Sign() < 0:
+		return slopeOfVmp{perC: working.Whole(0), scaled: working.Whole(0)}
+	case c.IsPercent():
+		perC := c.Term.Times(vmp).Over(working.Whole(100))
+		return slopeOfVmp{perC: perC, scaled: perC}
+	}
+	perC := c.PerC(v.terms.Isc)
+	return slopeOfVmp{perC: perC.Over(v.terms.Isc).Times(vmp), scaled: perC.Times(vmp), scale: v.terms.Isc}
 }
 
 // hotAllowance returns 1 − ahot ÷ 100; nil where none is stated.

@@ -27,28 +27,14 @@ func (a *Array) fullPowerLow(e *entry) working.Check {
 // slope made steeper by the current coefficient, since a stand-in is optimistic by
 // about that much; not met then is a caution with both values.
 func (a *Array) reaches(id string, e *entry, minimum *working.Term, broken working.Verdict) working.Check {
-	v := &a.planes[e.plane]
-	n, distance := e.terms.Series, at25(v.cellHot)
+	v, n := &a.planes[e.plane], e.terms.Series
 	hot := a.operatingString(e)
 	terms := a.hotSteps(v)
-
-	// n × (Vmp × scale + slope × scale × ΔT) × allowance against minimum × scale
-	held := func(scaled, scale *working.Term) *working.Condition {
-		voltage := times(v.terms.Vmp, scale).Plus(scaled.Times(distance))
-		return working.Exceeds(times(minimum, scale), times(n.Times(voltage), a.hotAllowance()))
-	}
-	rules := []working.Rule{rule(broken, "", held(v.slope.scaled, v.slope.scale))}
+	rules := []working.Rule{rule(broken, "", v.heldHot.below(minimum, n))}
 	if v.slope.standIn {
-		loss := a.currentLoss(v)
-		scaled := times(v.slope.scaled, loss.scale).Minus(times(loss.scaled, v.slope.scale))
-		scale := v.slope.scale
-		if loss.scale != nil {
-			scale = times(loss.scale, scale)
-		}
-		rules = append(rules, rule(working.Caution, "stand-in-coefficient", held(scaled, scale)))
-		if quantity.Int(25).Less(v.cellHot.Value()) {
-			steeper := v.terms.Vmp.Plus(v.slope.perC.Minus(loss.perC).Times(distance))
-			terms = append(terms, working.Named("Vhot,steeper", "V", times(n.Times(steeper), a.hotAllowance())))
+		rules = append(rules, rule(working.Caution, "stand-in-coefficient", v.heldSteeper.below(minimum, n)))
+		if quantity.Int(25).Less(v.cellHot.Value()) { // at 25 °C and below it is not the lower of the two
+			terms = append(terms, working.Named("Vhot,steeper", "V", n.Times(v.steeper)))
 		}
 	}
 	return judged(working.Check{
@@ -56,27 +42,6 @@ func (a *Array) reaches(id string, e *entry, minimum *working.Term, broken worki
 		Cites: []string{a.Book.Instructions.Cite},
 		Steps: shown(append(terms, hot)...),
 	}, a.doubtRules(rules, e.plane, id))
-}
-
-// defaultAlphaPct stands for a current coefficient that is not stated, in %/°C. Common practice for crystalline silicon.
-var defaultAlphaPct = quantity.Ratio(5, 100)
-
-// currentLoss returns α × Vmp ÷ 100, the part of the slope that a stand-in leaves
-// out: 0.05 %/°C where the current coefficient is not stated, 0 where it is negative.
-func (a *Array) currentLoss(v *plane) slopeOfVmp {
-	vmp, c := v.terms.Vmp, v.terms.IscCoeff
-	switch {
-	case c == nil:
-		perC := working.Looked("α", defaultAlphaPct).Times(vmp).Over(working.Whole(100))
-		return slopeOfVmp{perC: perC, scaled: perC}
-	case c.Term.Value().Sign() < 0:
-		return slopeOfVmp{perC: working.Whole(0), scaled: working.Whole(0)}
-	case c.IsPercent():
-		perC := c.Term.Times(vmp).Over(working.Whole(100))
-		return slopeOfVmp{perC: perC, scaled: perC}
-	}
-	perC := c.PerC(v.terms.Isc)
-	return slopeOfVmp{perC: perC.Over(v.terms.Isc).Times(vmp), scaled: perC.Times(vmp), scale: v.terms.Isc}
 }
 
 // startShare is the share of its voltage that a string has at first light; the
@@ -116,8 +81,7 @@ func (a *Array) staysBelow(id string, e *entry, maximum *working.Term) working.C
 	v := &a.planes[e.plane]
 	n := e.terms.Series
 	cold := working.Named("Vmp,cold,string", "V", n.Times(v.vmpCold))
-	voltage := times(v.terms.Vmp, v.slope.scale).Plus(v.slope.scaled.Times(at25(a.terms.Coldest)))
-	rules := []working.Rule{rule(working.Caution, "", working.Exceeds(n.Times(voltage), times(maximum, v.slope.scale)))}
+	rules := []working.Rule{rule(working.Caution, "", v.heldCold.exceeds(n, maximum))}
 	return judged(working.Check{
 		ID: id, About: aboutString(e), Value: valueOf(cold), Limit: valueOf(maximum), Unit: "V",
 		Cites: []string{a.Book.Instructions.Cite},
