@@ -16,7 +16,9 @@ import (
 // composer tells one design and its result in words.
 type composer struct {
 	*names
-	r *sizing.Result
+	r        *sizing.Result
+	abouts   []working.About // whose subject was found already
+	subjects []subject
 }
 
 func newComposer(d *design.Design, r *sizing.Result) *composer {
@@ -156,9 +158,9 @@ func (c *composer) tellCheck(k *working.Check) told {
 	t.Verdict = verdict(k.Verdict)
 	t.Sentence = how.says(c, k)
 	t.Steps = steps(k.Steps)
-	t.Shown = remark(k, how.atLeast)
+	t.Shown = remark(k, how.atLeast, t.Sentence)
 	if how.limit != nil {
-		t.Limit = how.limit(c, k)
+		t.Limit = capital(how.limit(c, k))
 	}
 	t.Cites = strings.Join(k.Cites, "; ")
 	t.Turns = c.turns(k, how.atLeast)
@@ -194,7 +196,7 @@ func steps(of []working.Step) []views.Step {
 }
 
 // remark says how the value of a check was rounded where its sentence shows it.
-func remark(k *working.Check, atLeast bool) string {
+func remark(k *working.Check, atLeast bool, sentence string) string {
 	if k.Value == nil || k.Unit == "" || len(k.Steps) == 0 {
 		return ""
 	}
@@ -203,17 +205,56 @@ func remark(k *working.Check, atLeast bool) string {
 		dir, word = quantity.Down, "down"
 	}
 	text, exact := k.Value.Fixed(placesOf(k.Unit), dir)
-	if exact {
+	as := withUnit(trueMinus(text), k.Unit)
+	if exact || !strings.Contains(sentence, as) {
 		return ""
 	}
-	return withUnit(stated(*k.Value), k.Unit) + ", shown as " + withUnit(trueMinus(text), k.Unit) + ", rounded " + word
+	return withUnit(stated(*k.Value), k.Unit) + ", shown as " + as + ", rounded " + word
 }
 
-// turns tells at which value of each input the verdict would turn.
+// turns tells at which value of each input the verdict would turn: counts first,
+// then temperatures, then by the share of change. What is more than its own size away
+// is named only.
 func (c *composer) turns(k *working.Check, atLeast bool) []string {
-	var words []string
+	type turning struct {
+		rank  int
+		share quantity.Exact
+		text  string
+	}
+	var near []turning
+	var far []string
+	own := c.subject(k.About)
 	for _, t := range k.Turns {
-		words = append(words, c.turn(t, broken(k, atLeast)))
+		f, known := c.field(t.Pointer)
+		if !known {
+			near = append(near, turning{rank: 3, text: t.Pointer + " " + stated(t.At)})
+			continue
+		}
+		name := own.call(f)
+		w := turning{rank: 2, text: c.turn(t, f, name, broken(k, atLeast))}
+		if t.ChangePct != nil {
+			w.share = t.ChangePct.Abs()
+		}
+		switch {
+		case f.whole:
+			w.rank = 0
+		case f.degree:
+			w.rank = 1
+		case f.unit != "%" && w.share.Cmp(quantity.Int(100)) > 0:
+			if !slices.Contains(far, name) {
+				far = append(far, name)
+			}
+			continue
+		}
+		near = append(near, w)
+	}
+	slices.SortStableFunc(near, func(a, b turning) int { return cmp.Or(cmp.Compare(a.rank, b.rank), a.share.Cmp(b.share)) })
+	var words []string
+	for _, w := range near {
+		words = append(words, w.text)
+	}
+	if len(far) > 0 {
+		words = append(words, "more than ±100"+nbsp+"% away: "+list(far))
 	}
 	return words
 }
@@ -221,13 +262,9 @@ func (c *composer) turns(k *working.Check, atLeast bool) []string {
 // turn tells one turning point. A margin that is left is shown rounded towards
 // today's value, a change that is needed rounded away from it, so that neither looks
 // better than it is.
-func (c *composer) turn(t working.Turn, needed bool) string {
-	f, known := c.field(t.Pointer)
-	if !known {
-		return t.Pointer + " " + stated(t.At)
-	}
+func (c *composer) turn(t working.Turn, f field, name string, needed bool) string {
 	if f.whole {
-		return f.called() + " " + stated(t.At)
+		return countTurn(t.At, name)
 	}
 	rises := f.now != nil && f.now.Less(t.At)
 	dir := quantity.Up
@@ -235,16 +272,26 @@ func (c *composer) turn(t working.Turn, needed bool) string {
 		dir = quantity.Down
 	}
 	at := withUnit(shown(t.At, turnPlaces(f), dir), f.unit)
-	if f.degree {
-		if f.unit == "°C" && f.pointer != "/allowances/headroom_c" && !strings.HasSuffix(f.pointer, "/hot_cell_rise_c") {
-			at += " (" + fahrenheit(t.At, dir) + ")"
+	switch {
+	case f.site && f.unit == "°C":
+		return name + " " + at + " (" + fahrenheit(t.At, dir) + ")"
+	case f.degree, f.unit == "%", t.ChangePct == nil:
+		return name + " " + at
+	}
+	return name + " " + signed(*t.ChangePct, needed) + ", " + at
+}
+
+// countTurn tells a count: "24 modules in series", "inputs 1".
+func countTurn(at quantity.Exact, name string) string {
+	for _, counted := range []string{"modules", "strings"} {
+		if rest, found := strings.CutPrefix(name, counted); found {
+			if at.Equal(quantity.Int(1)) {
+				counted = strings.TrimSuffix(counted, "s")
+			}
+			return stated(at) + nbsp + counted + rest
 		}
-		return f.called() + " " + at
 	}
-	if t.ChangePct == nil {
-		return f.called() + " " + at
-	}
-	return f.called() + " " + signed(*t.ChangePct, needed) + ", " + at
+	return name + " " + stated(at)
 }
 
 func signed(pct quantity.Exact, needed bool) string {

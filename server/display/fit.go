@@ -82,11 +82,24 @@ func (c *composer) where(f fitting) string {
 			planes = list(words)
 		}
 	}
-	where := capital(planes) + " on " + strings.Replace(c.terminals(f.terminals), " and ", " or ", 1)
+	where := capital(planes) + " on " + c.anyOf(f.terminals)
 	if v := c.inverterByID(f.row.Inverter); v != nil && v.Quantity > 1 {
 		where += " of each of the " + counted(v.Quantity, "inverter", "inverters")
 	}
 	return where
+}
+
+// anyOf names trackers of which a string takes one: "tracker t1 or t2", "each tracker, t1 to t12".
+func (c *composer) anyOf(all []terminal) string {
+	words := c.terminals(all)
+	ids, several := strings.CutPrefix(words, "trackers ")
+	if !several {
+		return words
+	}
+	if strings.Contains(ids, " to ") {
+		return "each tracker, " + ids
+	}
+	return "tracker " + strings.Replace(ids, " and ", " or ", 1)
 }
 
 // fit tells one limits row.
@@ -128,14 +141,14 @@ func (c *composer) rangeOf(row *sizing.Limit) string {
 	case row.MaxStrings == 0:
 		return span(low, row.MaxModules) + " in series, but no string"
 	}
-	return span(low, row.MaxModules) + " in series, up to " + stringsOf(row.MaxStrings)
+	return span(low, row.MaxModules) + " in series, up to " + countStrings(row.MaxStrings)
 }
 
 func span(low, high int64) string {
 	if low == high {
-		return "exactly " + modules(low)
+		return "exactly " + countModules(low)
 	}
-	return strconv.FormatInt(low, 10) + " to " + modules(high)
+	return strconv.FormatInt(low, 10) + " to " + countModules(high)
 }
 
 // ceilingName is what a limit of the ceiling is called in a sentence.
@@ -172,13 +185,13 @@ func (c *composer) ceilingSentence(row *sizing.Limit) string {
 	case row.MaxModules == 0:
 		return s + "; a single module exceeds it at the coldest."
 	case row.ReachedAtC == nil && c.byTable():
-		return s + "; " + modules(row.MaxModules) + " keep under it by the table."
+		return s + "; " + countModules(row.MaxModules) + " keep under it by the table."
 	case row.ReachedAtC == nil:
-		return s + "; " + modules(row.MaxModules) + " would meet it only below " + degrees(quantity.Int(-60), quantity.Nearest) + "."
+		return s + "; " + countModules(row.MaxModules) + " would meet it only below " + wholeDegrees(-60) + "."
 	case row.MaxModules == 1:
 		return s + "; 1" + nbsp + "module " + c.reachedWords(*row.ReachedAtC) + "."
 	}
-	return s + "; " + modules(row.MaxModules) + " " + c.reachedByMany(*row.ReachedAtC) + "."
+	return s + "; " + countModules(row.MaxModules) + " " + c.reachedByMany(*row.ReachedAtC) + "."
 }
 
 func (c *composer) reachedByMany(at quantity.Exact) string {
@@ -207,7 +220,7 @@ func (c *composer) fewestSentence(row *sizing.Limit) string {
 		short = "not start a hot inverter, which takes " + statedIn(*v.StartVoltageV, "V")
 	}
 	if low > row.MaxModules {
-		return "At least " + modules(low) + " are needed, or the string would " + short + "; at most " + strconv.FormatInt(row.MaxModules, 10) + " stay under the ceiling."
+		return "At least " + countModules(low) + " are needed, or the string would " + short + "; at most " + strconv.FormatInt(row.MaxModules, 10) + " stay under the ceiling."
 	}
 	if low <= 1 {
 		return ""

@@ -19,6 +19,7 @@ type field struct {
 	now     *quantity.Exact // the number as stated; nil for a word and where it is not stated
 	whole   bool            // a count
 	degree  bool            // a temperature, which a percentage says nothing about
+	site    bool            // a temperature of the site, not a difference
 }
 
 // called returns the field's name with its owner where it needs one.
@@ -81,7 +82,7 @@ func (l *listing) temperature(leaf, name string, t design.Temperature) {
 		unit = "°F"
 	}
 	f := l.add(leaf, name, statedDegrees(t), unit)
-	f.degree, f.now = true, &t.Value
+	f.degree, f.site, f.now = true, true, &t.Value
 }
 
 func (l *listing) difference(leaf, name string, d design.Difference) {
@@ -136,7 +137,7 @@ func takeInventory(d *design.Design) *inventory {
 	inv.allowances = allowanceFields(d)
 	inv.others = otherFields(d)
 	for i := range d.Strings {
-		l := listing{at: "/strings/" + strconv.Itoa(i)}
+		l := listing{at: "/strings/" + strconv.Itoa(i), owner: owner(len(d.Strings) > 1, stringsMark(i))}
 		l.count("/modules_in_series", "modules in series", d.Strings[i].ModulesInSeries)
 		l.count("/strings_in_parallel", "strings in parallel", d.Strings[i].StringsInParallel)
 		inv.strings = append(inv.strings, l.part)
@@ -229,8 +230,8 @@ func planeFields(p *design.Plane, i int, owner string) part {
 
 func allowanceFields(d *design.Design) part {
 	l := listing{part: part{name: "Allowances"}, at: "/allowances"}
-	l.optional("/hot_voltage_pct", "off the hot operating voltage", d.Allowances.HotVoltagePct, "%")
-	l.optional("/cold_voltage_pct", "onto the cold voltage", d.Allowances.ColdVoltagePct, "%")
+	l.optional("/hot_voltage_pct", "allowance off the hot voltage", d.Allowances.HotVoltagePct, "%")
+	l.optional("/cold_voltage_pct", "allowance onto the cold voltage", d.Allowances.ColdVoltagePct, "%")
 	if d.Allowances.HeadroomC == nil {
 		l.add("/headroom_c", "headroom asked for", "", "°C").degree = true
 	} else {
@@ -246,6 +247,9 @@ func otherFields(d *design.Design) part {
 	}
 	return l.part
 }
+
+// stringsMark names a strings entry as the schedule does: S1, S2.
+func stringsMark(i int) string { return "S" + strconv.Itoa(i+1) }
 
 func inventoryByPointer(d *design.Design) map[string]field {
 	inv := takeInventory(d)

@@ -160,7 +160,7 @@ func (c *composer) neverReached(what string) string {
 	if c.byTable() {
 		return "No row of the table tells where it would meet it."
 	}
-	return what + " would meet it only below " + degrees(quantity.Int(-60), quantity.Nearest) + "."
+	return what + " would meet it only below " + wholeDegrees(-60) + "."
 }
 
 // reachedWords tells a temperature at which the ceiling is met, and how far from the coldest that is.
@@ -189,7 +189,7 @@ func (c *composer) mostModules(k *working.Check) string {
 	if row.MaxModules == 0 {
 		return " Not one module fits."
 	}
-	return " At most " + modules(row.MaxModules) + " stay under it."
+	return " At most " + countModules(row.MaxModules) + " stay under it."
 }
 
 func (c *composer) fewestModules(fewest *int64, k *working.Check) string {
@@ -199,7 +199,7 @@ func (c *composer) fewestModules(fewest *int64, k *working.Check) string {
 	if fewest == nil {
 		return " No number of modules reaches it."
 	}
-	return " At least " + modules(*fewest) + " are needed."
+	return " At least " + countModules(*fewest) + " are needed."
 }
 
 func (c *composer) headroom(k *working.Check) string {
@@ -208,7 +208,7 @@ func (c *composer) headroom(k *working.Check) string {
 		if c.byTable() {
 			return "The ceiling is met at no row of the table that could be named."
 		}
-		return "The ceiling would be met only below " + degrees(quantity.Int(-60), quantity.Nearest) + "; " + wished + " of headroom are asked for."
+		return "The ceiling would be met only below " + wholeDegrees(-60) + "; " + wished + " of headroom are asked for."
 	}
 	if k.Value.Sign() < 0 {
 		return "There is none: the ceiling is met " + degreesApart(k.Value.Neg(), quantity.Up) + " above the coldest already."
@@ -244,7 +244,7 @@ func (c *composer) coldValidity(k *working.Check) string {
 	if len(k.Reasons) > 0 {
 		return "The method is used where its validity is in question."
 	}
-	s := "Crystalline silicon, no colder than " + degrees(quantity.Int(-40), quantity.Nearest) + ", a named statistic"
+	s := "Crystalline silicon, no colder than " + wholeDegrees(-40) + ", a named statistic"
 	if c.d.Site.ElevationM == nil {
 		return s + ". The elevation is not stated; above 2000" + nbsp + "m an inverter's limit may be lower."
 	}
@@ -316,7 +316,7 @@ func (c *composer) shortCircuit(k *working.Check) string {
 func (c *composer) inputs(k *working.Check) string {
 	strings, _ := k.Value.Int64()
 	inputs, _ := k.Limit.Int64()
-	s := stringsOf(strings) + " on " + counted(inputs, "input", "inputs")
+	s := countStrings(strings) + " on " + counted(inputs, "input", "inputs")
 	if strings > inputs {
 		return s + ": " + strconv.FormatInt(strings-inputs, 10) + " too many."
 	}
@@ -386,7 +386,7 @@ func hasReason(k *working.Check, code string) bool {
 func (c *composer) places(k *working.Check) string {
 	placed, _ := k.Value.Int64()
 	places, _ := k.Limit.Int64()
-	s := modules(placed) + " on " + counted(places, "place", "places")
+	s := countModules(placed) + " on " + counted(places, "place", "places")
 	switch {
 	case placed > places:
 		return s + ": " + strconv.FormatInt(placed-places, 10) + " too many."
@@ -427,54 +427,22 @@ func (c *composer) currentBasis(k *working.Check) string {
 
 func trackerLimit(leaf string) func(*composer, *working.Check) string {
 	return func(c *composer, k *working.Check) string {
-		inverter, tracker := k.About.Inverter, k.About.Tracker
-		if k.About.String >= 0 && k.About.String < len(c.d.Strings) {
-			inverter, tracker = c.d.Strings[k.About.String].Inverter, c.d.Strings[k.About.String].Tracker
-		}
-		for i := range c.d.Inverters {
-			for j := range c.d.Inverters[i].Trackers {
-				if c.d.Inverters[i].ID == inverter && c.d.Inverters[i].Trackers[j].ID == tracker {
-					return c.stated("/inverters/" + strconv.Itoa(i) + "/trackers/" + strconv.Itoa(j) + "/" + leaf)
-				}
-			}
-		}
-		return ""
+		return c.statedOf(k, c.subject(k.About).tracker+"/"+leaf)
 	}
 }
 
 func inverterLimit(leaf string) func(*composer, *working.Check) string {
 	return func(c *composer, k *working.Check) string {
-		inverter := k.About.Inverter
-		if k.About.String >= 0 && k.About.String < len(c.d.Strings) {
-			inverter = c.d.Strings[k.About.String].Inverter
-		}
-		for i := range c.d.Inverters {
-			if c.d.Inverters[i].ID == inverter {
-				return c.stated("/inverters/" + strconv.Itoa(i) + "/" + leaf)
-			}
-		}
-		return ""
+		return c.statedOf(k, c.subject(k.About).inverter+"/"+leaf)
 	}
 }
 
 func (c *composer) positions(k *working.Check) string {
-	for i := range c.d.Planes {
-		if c.d.Planes[i].ID == k.About.Plane {
-			return c.stated("/planes/" + strconv.Itoa(i) + "/positions")
-		}
-	}
-	return ""
+	return c.statedOf(k, c.subject(k.About).plane+"/positions")
 }
 
 func (c *composer) seriesFuse(k *working.Check) string {
-	if p := c.planeOfString(k.About.String); p != nil {
-		for i := range c.d.Modules {
-			if c.d.Modules[i].ID == p.Module {
-				return c.stated("/modules/" + strconv.Itoa(i) + "/max_series_fuse_a")
-			}
-		}
-	}
-	return ""
+	return c.statedOf(k, c.subject(k.About).module+"/max_series_fuse_a")
 }
 
 func (c *composer) headroomAsked(k *working.Check) string {
@@ -482,11 +450,11 @@ func (c *composer) headroomAsked(k *working.Check) string {
 	if c.d.Allowances.HeadroomC == nil {
 		return c.call(pointer) + " " + withUnit(stated(*k.Limit), "°C") + ", used where none is stated"
 	}
-	return c.stated(pointer)
+	return c.statedOf(k, pointer)
 }
 
-// stated tells a value of the document with its name and its source.
-func (c *composer) stated(pointer string) string {
+// statedOf tells a value of the document with its name and its source.
+func (c *composer) statedOf(k *working.Check, pointer string) string {
 	f, known := c.field(pointer)
 	if !known {
 		return ""
@@ -495,7 +463,7 @@ func (c *composer) stated(pointer string) string {
 	if value == "" {
 		value = "not stated"
 	}
-	s := f.called() + " " + value
+	s := c.subject(k.About).call(f) + " " + value
 	if from := source(c.d, pointer); from != "" {
 		s += " (" + from + ")"
 	}

@@ -93,6 +93,11 @@ func fahrenheit(c quantity.Exact, dir quantity.Direction) string {
 	return withUnit(shown(toFahrenheit(c), placesDegree, dir), "°F")
 }
 
+// wholeDegrees returns a temperature that a rule names, such as −40 °C.
+func wholeDegrees(c int64) string {
+	return statedIn(quantity.Int(c), "°C") + " (" + statedIn(toFahrenheit(quantity.Int(c)), "°F") + ")"
+}
+
 func toFahrenheit(c quantity.Exact) quantity.Exact {
 	return c.Mul(quantity.Ratio(9, 5)).Add(quantity.Int(32))
 }
@@ -129,9 +134,9 @@ func counted(n int64, one, many string) string {
 	return number + nbsp + many
 }
 
-func modules(n int64) string { return counted(n, "module", "modules") }
+func countModules(n int64) string { return counted(n, "module", "modules") }
 
-func stringsOf(n int64) string { return counted(n, "string", "strings") }
+func countStrings(n int64) string { return counted(n, "string", "strings") }
 
 // list joins words as a sentence does: "a", "a and b", "a, b and c".
 func list(words []string) string { return joined(words, " and ") }

@@ -48,11 +48,11 @@ func (c *composer) reason(k *working.Check, r working.Reason) string {
 	case "basis-other":
 		return "The coldest temperature is of a statistic that is not named. An average winter low is not an extreme."
 	case "colder-than-minus-40":
-		return "Colder than " + degrees(quantity.Int(-40), quantity.Nearest) + " no table row holds, and a straight coefficient is untested."
+		return "Colder than " + wholeDegrees(-40) + " no table row holds, and a straight coefficient is untested."
 	case "other-method-higher":
 		return ""
 	case "other-method-not-to-be-had":
-		return "The table is for crystalline silicon down to " + degrees(quantity.Int(-40), quantity.Nearest) + "."
+		return "The table is for crystalline silicon down to " + wholeDegrees(-40) + "."
 	case "stand-in-coefficient":
 		return c.standIn(k)
 	case "start-at-first-light":
@@ -76,9 +76,9 @@ func (c *composer) ratedBasis(k *working.Check) string {
 }
 
 func (c *composer) standIn(k *working.Check) string {
-	s := "The datasheet gives no Vmp coefficient, and what stands in for it is optimistic by about the current coefficient."
+	const missing = "No Vmp coefficient is stated; what stands in for it is optimistic by about the current coefficient"
 	if steeper := stepValue(k, "Vhot,steeper"); steeper != nil {
-		s += " With that counted the string comes to " + stringVolts(*steeper, quantity.Down) + "."
+		return missing + ", with which it comes to " + stringVolts(*steeper, quantity.Down) + "."
 	}
-	return s
+	return missing + "."
 }

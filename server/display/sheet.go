@@ -67,7 +67,7 @@ func (c *composer) arraySize() string {
 	if len(c.d.Strings) == 0 {
 		return "nothing strung yet"
 	}
-	s := modules(c.modulesOf(everyString)) + ", " + kilowatts(c.powerOf(everyString)) + " DC"
+	s := countModules(c.modulesOf(everyString)) + ", " + kilowatts(c.powerOf(everyString)) + " DC"
 	ac := quantity.Int(0)
 	for i := range c.d.Inverters {
 		v := &c.d.Inverters[i]
@@ -95,7 +95,7 @@ func (c *composer) modulesOf(which func(*design.StringEntry) bool) (n int64) {
 	return n
 }
 
-func (c *composer) stringsOf(which func(*design.StringEntry) bool) (n int64) {
+func (c *composer) strung(which func(*design.StringEntry) bool) (n int64) {
 	for i := range c.d.Strings {
 		if s := &c.d.Strings[i]; which(s) {
 			n += s.StringsInParallel
@@ -263,7 +263,7 @@ func (c *composer) totals() []views.TotalRow {
 	total := func(of, room string, which func(*design.StringEntry) bool) views.TotalRow {
 		return views.TotalRow{
 			Of:      of,
-			Strings: strconv.FormatInt(c.stringsOf(which), 10),
+			Strings: strconv.FormatInt(c.strung(which), 10),
 			Modules: strconv.FormatInt(c.modulesOf(which), 10),
 			Power:   kilowatts(c.powerOf(which)),
 			Room:    room,
@@ -394,7 +394,7 @@ func governing(all []views.CheckKind) []views.CheckKind {
 		}
 		k.Checks = kept
 		if rest > 0 {
-			k.Rest = capital(counted(rest, "further case", "further cases")) + " of this kind " + isOrAre(rest, "is", "are") + " within, with more room; the working page shows " + isOrAre(rest, "it", "them") + "."
+			k.Rest = capital(counted(rest, "further case", "further cases")) + " of this kind " + isOrAre(rest, "is", "are") + " within; the whole working shows " + isOrAre(rest, "it", "them") + "."
 		}
 		out[i] = k
 	}

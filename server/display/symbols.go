@@ -34,14 +34,17 @@ var symbols = []views.Symbol{
 	{Symbol: "Vinverter,max", Meaning: "inverter's maximum DC voltage, V"},
 	{Symbol: "Vmodule,max", Meaning: "module's maximum system voltage, V"},
 	{Symbol: "Vstructure,max", Meaning: "the code's limit on or in the structure, V"},
-	{Symbol: "Voc(Tcold)", Meaning: "one module's open-circuit voltage on the coldest morning before the allowance, V"},
+	{Symbol: "Vother,#", Meaning: "limit of other rated part #, V"},
+	{Symbol: "Voc,Tcold", Meaning: "one module's open-circuit voltage on the coldest morning before the allowance, V"},
 	{Symbol: "Voc,cold", Meaning: "one module's open-circuit voltage on the coldest morning, V"},
 	{Symbol: "Vcold", Meaning: "the string's open-circuit voltage on the coldest morning, V"},
+	{Symbol: "Vcold#", Meaning: "the same of strings entry S#, V"},
 	{Symbol: "Vcold,other", Meaning: "the same by the method that was not chosen, V"},
 	{Symbol: "ΔVcold", Meaning: "how far the cold voltages of strings in parallel lie apart, V"},
 	{Symbol: "Tceiling", Meaning: "temperature at which the string meets the ceiling, °C"},
 	{Symbol: "headroom", Meaning: "how much colder than the coldest that is, or is asked to be, °C"},
-	{Symbol: "Vmp(Tcell)", Meaning: "one module's operating voltage in the hottest cells before the allowance, V"},
+	{Symbol: "headroom,F", Meaning: "the same as stated, °F"},
+	{Symbol: "Vmp,Tcell", Meaning: "one module's operating voltage in the hottest cells before the allowance, V"},
 	{Symbol: "Vmp,hot", Meaning: "one module's operating voltage in the hottest cells, V"},
 	{Symbol: "Vhot", Meaning: "the string's operating voltage in the hottest cells, V"},
 	{Symbol: "Vhot,steeper", Meaning: "the same with the current coefficient counted into the slope, V"},
@@ -56,6 +59,7 @@ var symbols = []views.Symbol{
 	{Symbol: "nmax", Meaning: "the most modules whose cold voltage does not exceed the ceiling"},
 	{Symbol: "nmin", Meaning: "the fewest modules whose hot voltage reaches the window"},
 	{Symbol: "s", Meaning: "strings in parallel"},
+	{Symbol: "s#", Meaning: "strings in parallel of strings entry S#"},
 	{Symbol: "Σs", Meaning: "strings on the tracker"},
 	{Symbol: "inputs", Meaning: "strings that can be landed on the tracker"},
 	{Symbol: "gain", Meaning: "gain of current on the plane, %"},
@@ -65,16 +69,18 @@ var symbols = []views.Symbol{
 	{Symbol: "ΣImp", Meaning: "operating current of all strings on the tracker, A"},
 	{Symbol: "ΣIsc", Meaning: "short-circuit current of all strings on the tracker by the chosen basis, A"},
 	{Symbol: "ΣImax", Meaning: "the same × 1.25, A"},
-	{Symbol: "Imp#", Meaning: "operating current of strings entry #, A"},
-	{Symbol: "Isc#", Meaning: "short-circuit current of strings entry # by the chosen basis, A"},
+	{Symbol: "Imp#", Meaning: "operating current of strings entry S#, A"},
+	{Symbol: "Isc#", Meaning: "short-circuit current of strings entry S# by the chosen basis, A"},
 	{Symbol: "Imax#", Meaning: "the same × 1.25, A"},
 	{Symbol: "Iback", Meaning: "current that the inverter can feed back, A"},
 	{Symbol: "Iback-feed", Meaning: "current that can flow backwards into one failed string, A"},
 	{Symbol: "Ifuse,min", Meaning: "the least rating of a string fuse, A"},
+	{Symbol: "modules#", Meaning: "modules of strings entry S#"},
 	{Symbol: "Σmodules", Meaning: "modules strung on the plane"},
 	{Symbol: "positions", Meaning: "places for modules on the plane"},
 	{Symbol: "left over", Meaning: "places that stay empty"},
-	{Symbol: "ΣPmax", Meaning: "power at STC of all modules on the inverter, W"},
+	{Symbol: "P#", Meaning: "power at STC of the modules of strings entry S#, W"},
+	{Symbol: "ΣP", Meaning: "power at STC of all modules on the inverter, W"},
 }
 
 // symbolsIn explains the symbols that occur in steps.
@@ -114,14 +120,21 @@ func bare(word string) string {
 	}
 }
 
-// numberless writes the number of a strings entry as "#": Imp2 is Imp#.
+// numberless writes the number of a strings entry or other part as "#", where the
+// symbol is explained so: Imp2 is Imp#.
 func numberless(symbol string) string {
 	cut := strings.TrimRightFunc(symbol, unicode.IsDigit)
-	switch cut {
-	case "Imp", "Isc", "Imax":
-		if cut != symbol {
-			return cut + "#"
-		}
+	if cut != symbol && explains(cut+"#") {
+		return cut + "#"
 	}
 	return symbol
+}
+
+func explains(symbol string) bool {
+	for _, s := range symbols {
+		if s.Symbol == symbol {
+			return true
+		}
+	}
+	return false
 }

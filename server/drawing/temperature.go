@@ -84,7 +84,7 @@ type layout struct {
 }
 
 var (
-	wideLayout   = layout{width: 156, height: 92, size: 3.1, left: 11.5, bottom: 14.5, top: 1.5, limitsBeside: true}
+	wideLayout   = layout{width: 156, height: 92, size: 3.25, left: 12, bottom: 15.2, top: 1.5, limitsBeside: true}
 	narrowLayout = layout{width: 92, height: 108, size: 3.5, left: 2.5, bottom: 16, top: 1.5}
 )
 
