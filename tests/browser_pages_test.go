@@ -1,12 +1,13 @@
 package tests
 
 import (
-	"fmt"
 	"io"
 	"net/http"
 	"net/http/httptest"
 	"strings"
 	"testing"
+
+	"github.com/chromedp/cdproto/emulation"
 )
 
 // sitePages is every page of the site and how a visitor comes to it.
@@ -15,29 +16,49 @@ var sitePages = []struct {
 	open func(b *tab)
 }{
 	{"start", func(b *tab) { b.open("/") }},
+	{"empty design", func(b *tab) { b.open("/design") }},
+	{"example", func(b *tab) { b.open("/example") }},
+	{"design with faults", func(b *tab) { b.open("/design"); b.leave("#design button.main") }},
+	{"working", func(b *tab) { b.open("/example"); b.leave(`button[formaction="/design/working"]`) }},
+	{"sheet", func(b *tab) { b.open("/example"); b.leave(`button[formaction="/design/sheet"]`) }},
 	{"no such page", func(b *tab) { b.open("/no-such-page") }},
 }
 
-// TestBrowser_EveryPage looks at every page on a desk's screen and on a phone, with
-// script and without.
+// TestBrowser_EveryPage looks at every page on screens of several widths, with script
+// and without, and in the dark.
 func TestBrowser_EveryPage(t *testing.T) {
 	needBrowser(t)
 	site := startSite(t)
-	for _, size := range []viewport{desk, phone, narrow} {
-		for _, script := range []bool{true, false} {
-			t.Run(fmt.Sprintf("%s/script=%t", size.name, script), func(t *testing.T) {
-				b := openTab(t, site, size, script)
-				for _, p := range sitePages {
-					t.Run(p.name, func(t *testing.T) {
-						b.in(t, func() {
-							p.open(b)
-							b.picture(fmt.Sprintf("%s %s script=%t", p.name, size.name, script))
-							b.sound()
-						})
+	for _, c := range []struct {
+		name   string
+		size   viewport
+		script bool
+		dark   bool
+	}{
+		{"desk", desk, true, false},
+		{"desk without script", desk, false, false},
+		{"desk in the dark", desk, true, true},
+		{"phone", phone, true, false},
+		{"phone without script", phone, false, false},
+		{"narrow", narrow, true, false},
+	} {
+		t.Run(c.name, func(t *testing.T) {
+			b := openTab(t, site, c.size, c.script)
+			if c.dark {
+				b.do(command(emulation.SetEmulatedMedia, emulation.SetEmulatedMediaParams{
+					Features: []*emulation.MediaFeature{{Name: "prefers-color-scheme", Value: "dark"}},
+				}))
+			}
+			for _, p := range sitePages {
+				t.Run(p.name, func(t *testing.T) {
+					b.in(t, func() {
+						p.open(b)
+						b.picture(p.name + ", " + c.name)
+						b.sound()
 					})
-				}
-			})
-		}
+				})
+			}
+		})
 	}
 }
 
