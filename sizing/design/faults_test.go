@@ -7,6 +7,7 @@ import (
 	"strconv"
 	"strings"
 	"testing"
+	"time"
 )
 
 // edit changes one place of a document: the JSON put there, "" to take it away.
@@ -374,14 +375,26 @@ func TestFaults_Names(t *testing.T) {
 	}
 }
 
-// A hostile text is not answered with a list as long as itself.
+// A hostile text is not answered with a list, or with memory, many times its size.
 func TestFaults_AreCapped(t *testing.T) {
-	text := `{` + strings.Repeat(`"x":0,`, 5000) + `"x":0}`
-	faults := Read([]byte(text)).Faults
-	if len(faults) != maxFaults+1 {
-		t.Fatalf("%d faults, want %d", len(faults), maxFaults+1)
-	}
-	if last := faults[maxFaults]; !strings.Contains(last.Detail, "more faults") {
-		t.Errorf("the last is %q", last)
+	for name, text := range map[string]string{
+		"fields":      `{` + strings.Repeat(`"x":0,`, 100_000) + `"x":0}`,
+		"one field":   `{` + strings.Repeat(`"title":"",`, 100_000) + `"title":""}`,
+		"modules":     `{"modules":[` + strings.Repeat(`{},`, 100_000) + `{}]}`,
+		"trackers":    `{"inverters":[{"trackers":[` + strings.Repeat(`{},`, 100_000) + `0]}]}`,
+		"strings":     `{"strings":[` + strings.Repeat(`0,`, 100_000) + `0]}`,
+		"sources":     `{"sources":{` + strings.Repeat(`"a":0,`, 100_000) + `"a":0}}`,
+		"asked":       `{"answers":[{"value_asked":{` + strings.Repeat(`"a":null,`, 100_000) + `"a":0}}]}`,
+		"empty lists": `{"modules":[` + strings.Repeat(`[],`, 100_000) + `[]]}`,
+	} {
+		start := time.Now()
+		faults := Read([]byte(text)).Faults
+		if len(faults) != maxFaults+1 || !strings.Contains(faults[maxFaults].Detail, "more faults") {
+			t.Errorf("%s: %d faults, want %d and one that says there are more", name, len(faults), maxFaults)
+		}
+		if spent := time.Since(start); spent > 5*time.Second {
+			t.Errorf("%s: took %v", name, spent)
+		}
+		t.Logf("%s: %d bytes in %v", name, len(text), time.Since(start))
 	}
 }

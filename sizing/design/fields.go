@@ -10,8 +10,9 @@ import (
 	"rimeline/sizing/quantity"
 )
 
-// maxFaults is how many faults of one document are told one by one. It keeps a
-// hostile text from asking for a thousand times its own size in sentences.
+// maxFaults is how many faults of one document are told. Beyond it the lists are
+// not read on: a hostile text shall not ask for a thousand times its own size in
+// sentences, nor in memory.
 const maxFaults = 1000
 
 // maxWhole is the largest count a design may state. It leaves room for the
@@ -22,7 +23,7 @@ const maxWhole = 1_000_000_000
 type reader struct {
 	nodes  []node
 	faults []placedFault
-	untold int // faults beyond maxFaults
+	more   bool // there are faults beyond maxFaults
 
 	// Room for the values that pointers are kept of: one allocation each instead of one a value.
 	numbers []quantity.Exact
@@ -37,7 +38,7 @@ type placedFault struct {
 
 func (r *reader) fault(at int32, pointer, found, expected, detail string) {
 	if len(r.faults) == maxFaults {
-		r.untold++
+		r.more = true
 		return
 	}
 	r.faults = append(r.faults, placedFault{Fault{pointer, found, expected, detail}, at})
@@ -58,12 +59,8 @@ func (r *reader) collected() Faults {
 	for i, f := range r.faults {
 		faults[i] = f.Fault
 	}
-	if r.untold > 0 {
-		faults = append(faults, Fault{
-			Found:    fmt.Sprintf("%d more faults", r.untold),
-			Expected: "none",
-			Detail:   fmt.Sprintf("There are %d more faults; only %d are listed.", r.untold, maxFaults),
-		})
+	if r.more {
+		faults = append(faults, Fault{Found: "more faults", Expected: "none", Detail: fmt.Sprintf("There are more faults; the first %d are listed.", maxFaults)})
 	}
 	return faults
 }
@@ -233,7 +230,7 @@ func (o *object) pointer(name string) string { return o.r.pointer(o.n) + "/" + p
 
 // close records the fields that the schema did not ask for.
 func (o *object) close() {
-	for i := o.r.nodes[o.n].first; i != 0; i = o.r.nodes[i].next {
+	for i := o.r.nodes[o.n].first; i != 0 && !o.r.more; i = o.r.nodes[i].next {
 		if v := &o.r.nodes[i]; !v.read {
 			o.unknown(i, v.name)
 		}
@@ -544,6 +541,20 @@ func (o *object) has(name string) bool {
 		}
 	}
 	return false
+}
+
+// elements returns the list that the elements from first on make, one by one. It
+// does not allocate for elements that are too faulty to be read.
+func elements[T any](r *reader, first int32, read func(*T, int32)) []T {
+	if first == 0 {
+		return nil
+	}
+	list := make([]T, 0, min(r.count(first), 64))
+	for n := first; n != 0 && !r.more; n = r.nodes[n].next {
+		list = append(list, *new(T))
+		read(&list[len(list)-1], n)
+	}
+	return list
 }
 
 // count returns how many siblings start at first.

@@ -182,11 +182,8 @@ func (t Temperature) shown() string {
 func (w *walk) readModules(parent *object) {
 	first, sound := parent.list("modules", "the modules", must, "module")
 	w.modules = ids{what: "module", complete: sound && first != 0}
-	w.d.Modules = make([]Module, w.count(first))
+	w.d.Modules = elements(w.reader, first, w.module)
 	w.modulesUsed = make([]bool, len(w.d.Modules))
-	for n := first; n != 0; n = w.nodes[n].next {
-		w.module(&w.d.Modules[w.nodes[n].index], n)
-	}
 }
 
 func (w *walk) module(m *Module, n int32) {
@@ -334,7 +331,7 @@ func (o *object) voltageCoefficient(name, label string, p presence, rated *quant
 	if c == nil || c.Unit != PercentPerC && rated == nil {
 		return c
 	}
-	percent := c.PercentOf(or(rated, quantity.Exact{}))
+	percent := c.PercentOf(or(rated, zero))
 	away := quantity.Down // so that the rounded number lies outside the range too
 	switch {
 	case percent.Less(steepestPct):
@@ -360,23 +357,18 @@ func (o *object) voltageCoefficient(name, label string, p presence, rated *quant
 func (w *walk) readInverters(parent *object) {
 	first, sound := parent.list("inverters", "the inverters", must, "inverter")
 	w.inverters = ids{what: "inverter", complete: sound && first != 0}
-	count := w.count(first)
-	w.d.Inverters = make([]Inverter, count)
-	w.trackers = make([]ids, count)
-	w.quantities = make([]bool, count)
-	for n := first; n != 0; n = w.nodes[n].next {
-		w.inverter(n)
-	}
+	w.d.Inverters = elements(w.reader, first, w.inverter)
 }
 
-func (w *walk) inverter(n int32) {
+func (w *walk) inverter(v *Inverter, n int32) {
+	index := len(w.trackers)
+	w.trackers = append(w.trackers, ids{})
+	w.quantities = append(w.quantities, false)
 	var o object
 	if !o.open(w.reader, n, "an inverter") {
 		w.inverters.complete = false
 		return
 	}
-	index := w.nodes[n].index
-	v := &w.d.Inverters[index]
 	v.ID = w.id(&o, &w.inverters, n)
 	v.Maker, _ = o.text("maker", "the maker", may)
 	v.Model, _ = o.text("model", "the model", may)
@@ -386,7 +378,7 @@ func (w *walk) inverter(n int32) {
 	v.ACRatedW = o.number("ac_rated_w", "the rated AC power", may, aboveZero)
 	v.MaxDCPowerW = o.number("max_dc_power_w", "the maximum DC power", may, aboveZero)
 	v.MaxDCPowerIs = o.word("max_dc_power_is", "what the maximum DC power is", powerKinds, PowerLimit)
-	v.MaxDCVoltageV = or(o.number("max_dc_voltage_v", "the maximum DC voltage", must, aboveZero), quantity.Exact{})
+	v.MaxDCVoltageV = or(o.number("max_dc_voltage_v", "the maximum DC voltage", must, aboveZero), zero)
 	v.StartVoltageV = o.number("start_voltage_v", "the start voltage", may, aboveZero)
 	v.BackFeedA = o.number("back_feed_a", "the back-feed current", may, zeroOrMore)
 	w.readTrackers(&o, v, &w.trackers[index])
@@ -396,10 +388,7 @@ func (w *walk) inverter(n int32) {
 func (w *walk) readTrackers(parent *object, v *Inverter, s *ids) {
 	first, sound := parent.list("trackers", "the trackers", must, "tracker")
 	*s = ids{what: "tracker", within: v.ID, complete: sound && first != 0}
-	v.Trackers = make([]Tracker, w.count(first))
-	for n := first; n != 0; n = w.nodes[n].next {
-		w.tracker(&v.Trackers[w.nodes[n].index], s, n)
-	}
+	v.Trackers = elements(w.reader, first, func(t *Tracker, n int32) { w.tracker(t, s, n) })
 }
 
 func (w *walk) tracker(t *Tracker, s *ids, n int32) {
@@ -462,10 +451,7 @@ func (w *walk) inside(o *object, at int32, name, label string, x, low, high *qua
 func (w *walk) readPlanes(parent *object) {
 	first, sound := parent.list("planes", "the roof planes", must, "roof plane")
 	w.planes = ids{what: "plane", complete: sound && first != 0}
-	w.d.Planes = make([]Plane, w.count(first))
-	for n := first; n != 0; n = w.nodes[n].next {
-		w.plane(&w.d.Planes[w.nodes[n].index], n)
-	}
+	w.d.Planes = elements(w.reader, first, w.plane)
 }
 
 func (w *walk) plane(p *Plane, n int32) {
@@ -508,29 +494,23 @@ func (w *walk) allowances(parent *object) {
 
 func (w *walk) otherLimits(parent *object) {
 	first, _ := parent.list("other_limits", "the other limits", may, "")
-	for n := first; n != 0; n = w.nodes[n].next {
-		var o object
-		if !o.open(w.reader, n, "a limit") {
-			continue
-		}
-		var l OtherLimit
-		l.Name, _, _ = o.named("name", "the name of the part")
-		l.MaxVoltageV = or(o.number("max_voltage_v", "the maximum voltage of the part", must, aboveZero), quantity.Exact{})
-		l.Source, _ = o.text("source", "where the limit comes from", must)
-		o.close()
-		w.d.OtherLimits = append(w.d.OtherLimits, l)
+	w.d.OtherLimits = elements(w.reader, first, w.otherLimit)
+}
+
+func (w *walk) otherLimit(l *OtherLimit, n int32) {
+	var o object
+	if !o.open(w.reader, n, "a limit") {
+		return
 	}
+	l.Name, _, _ = o.named("name", "the name of the part")
+	l.MaxVoltageV = or(o.number("max_voltage_v", "the maximum voltage of the part", must, aboveZero), zero)
+	l.Source, _ = o.text("source", "where the limit comes from", must)
+	o.close()
 }
 
 func (w *walk) strings(parent *object) {
 	first, _ := parent.list("strings", "the strings", may, "")
-	if first == 0 {
-		return
-	}
-	w.d.Strings = make([]StringEntry, w.count(first))
-	for n := first; n != 0; n = w.nodes[n].next {
-		w.stringEntry(&w.d.Strings[w.nodes[n].index], n)
-	}
+	w.d.Strings = elements(w.reader, first, w.stringEntry)
 }
 
 func (w *walk) stringEntry(e *StringEntry, n int32) {
@@ -587,7 +567,7 @@ func (w *walk) sources(parent *object) {
 		return
 	}
 	w.distinct(n)
-	for i := w.nodes[n].first; i != 0; i = w.nodes[i].next {
+	for i := w.nodes[n].first; i != 0 && !w.more; i = w.nodes[i].next {
 		v := &w.nodes[i]
 		if !isPointer(v.name) {
 			w.faultAt(i, quote(v.name), aPointer, "A source belongs to a place of the design, named by a JSON Pointer such as /modules/0/voc_v.")
@@ -617,22 +597,22 @@ func isPointer(s string) bool {
 
 func (w *walk) answers(parent *object) {
 	first, _ := parent.list("answers", "the answers", may, "")
-	for n := first; n != 0; n = w.nodes[n].next {
-		var o object
-		if !o.open(w.reader, n, "an answer") {
-			continue
-		}
-		var a Answer
-		var at int32
-		a.Pointer, at, _ = o.named("pointer", "the pointer of the question")
-		if a.Pointer != "" && !isPointer(a.Pointer) {
-			w.faultAt(at, quote(a.Pointer), aPointer, "An answer names its question by a JSON Pointer such as /modules/0/voc_v.")
-		}
-		a.ValueAsked = w.valueAsked(&o)
-		a.Reason, _, _ = o.named("reason", "the reason of the answer")
-		o.close()
-		w.d.Answers = append(w.d.Answers, a)
+	w.d.Answers = elements(w.reader, first, w.answer)
+}
+
+func (w *walk) answer(a *Answer, n int32) {
+	var o object
+	if !o.open(w.reader, n, "an answer") {
+		return
 	}
+	var at int32
+	a.Pointer, at, _ = o.named("pointer", "the pointer of the question")
+	if a.Pointer != "" && !isPointer(a.Pointer) {
+		w.faultAt(at, quote(a.Pointer), aPointer, "An answer names its question by a JSON Pointer such as /modules/0/voc_v.")
+	}
+	a.ValueAsked = w.valueAsked(&o)
+	a.Reason, _, _ = o.named("reason", "the reason of the answer")
+	o.close()
 }
 
 // tableApplies records why the table of factors, chosen at n, cannot be used.
