@@ -551,7 +551,8 @@ func elements[T any](r *reader, first int32, read func(*T, int32)) []T {
 	}
 	list := make([]T, 0, min(r.count(first), 64))
 	for n := first; n != 0 && !r.more; n = r.nodes[n].next {
-		list = append(list, *new(T))
+		var empty T
+		list = append(list, empty)
 		read(&list[len(list)-1], n)
 	}
 	return list

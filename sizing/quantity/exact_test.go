@@ -60,7 +60,7 @@ type sample struct {
 }
 
 func TestArithmetic(t *testing.T) {
-	list := samples(400)
+	list := samples(200)
 	check := func(op string, a, b sample, got Exact, want *big.Rat) {
 		t.Helper()
 		if got.Rat().Cmp(want) != 0 {
@@ -97,7 +97,7 @@ func TestArithmetic(t *testing.T) {
 
 func TestOneNumber(t *testing.T) {
 	one := big.NewInt(1)
-	for _, a := range samples(5000) {
+	for _, a := range samples(2000) {
 		equal := func(op string, got Exact, want *big.Rat) {
 			t.Helper()
 			if got.Rat().Cmp(want) != 0 {
