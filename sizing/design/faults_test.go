@@ -168,7 +168,7 @@ func TestFaults(t *testing.T) {
 		{"temperature without unit", []edit{{"/site/coldest_c", `{"value": 7}`}}, []want{{"/site/coldest_c/unit", "nothing", "°C or °F", "Choose the unit of the temperature."}}},
 		{"temperature without value", []edit{{"/site/coldest_c", `{"unit": "°F"}`}}, []want{{"/site/coldest_c/value", "nothing", "a number", "Enter the coldest temperature."}}},
 		{"temperature with more", []edit{{"/site/coldest_c", `{"value": 7, "unit": "°F", "basis": "x"}`}}, []want{{"/site/coldest_c/basis", "", "one of value and unit", ""}}},
-		{"temperature as text", []edit{{"/site/coldest_c", `"7 °F"`}}, []want{{"/site/coldest_c", `"7 °F"`, `{"value": …, "unit": "°F"}`, ""}}},
+		{"temperature as text", []edit{{"/site/coldest_c", `"7 °F"`}}, []want{{"/site/coldest_c", `"7 °F"`, "a number in °C, or a value with the unit °C or °F", ""}}},
 		{"text as the value", []edit{{"/site/coldest_c", `{"value": "7", "unit": "°F"}`}}, []want{{"/site/coldest_c/value", `"7"`, "a number", "write 7 without the quotes"}}},
 		{"coefficient without unit", []edit{{"/modules/0/voc_temp_coeff", `-0.27`}}, []want{{"/modules/0/voc_temp_coeff", "−0.27", `{"value": …, "unit": …}`, "%/°C, mV/°C or V/°C"}}},
 		{"coefficient missing", []edit{{"/modules/0/voc_temp_coeff", ""}}, []want{{"/modules/0/voc_temp_coeff", "nothing", `{"value": …, "unit": …}`, "Enter the temperature coefficient of Voc."}}},

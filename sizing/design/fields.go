@@ -284,11 +284,11 @@ func (o *object) text(name, label string, p presence) (text string, ok bool) {
 	return o.r.nodes[n].text, sound
 }
 
-// named reads a required text that must say something.
-func (o *object) named(name, label string) (text string, n int32, ok bool) {
+// named reads a required text that must say something. ask is the verb to ask for it with: "Enter ".
+func (o *object) named(name, ask, label string) (text string, n int32, ok bool) {
 	n, sound := o.find(name)
 	if n == 0 {
-		o.missing(name, "a text that is not blank", "Enter "+label)
+		o.missing(name, "a text that is not blank", ask+label)
 		return "", 0, false
 	}
 	v := &o.r.nodes[n]
@@ -297,7 +297,7 @@ func (o *object) named(name, label string) (text string, n int32, ok bool) {
 		o.r.wrongKind(n, label, "a text")
 		return "", n, false
 	case strings.TrimSpace(v.text) == "":
-		o.r.faultAt(n, quote(v.text), "a text that is not blank", "Enter "+label+".")
+		o.r.faultAt(n, quote(v.text), "a text that is not blank", ask+label+".")
 		return "", n, false
 	}
 	return v.text, n, sound
@@ -490,7 +490,7 @@ func (o *object) temperature(name, label string, p presence, b bound) *Temperatu
 			return nil
 		}
 	default:
-		r.wrongKind(n, label, b.expected("°C")+`, or {"value": …, "unit": "°F"}`)
+		r.wrongKind(n, label, b.expected("°C")+", or a value with the unit °C or °F")
 		return nil
 	}
 	if !sound {

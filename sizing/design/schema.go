@@ -48,7 +48,7 @@ func (s *ids) add(r *reader, n int32, id string, index int32) {
 // where it cannot be said which; there need not be a fault for that, as the list
 // itself may be the faulty one.
 func (o *object) reference(name, label string, s *ids) (id string, index int32) {
-	id, n, ok := o.named(name, label)
+	id, n, ok := o.named(name, "Choose ", label)
 	if !ok {
 		return "", -1
 	}
@@ -236,7 +236,7 @@ func (w *walk) above(o *object, at int32, name, symbol string, x *quantity.Exact
 
 // id reads the id of an element of a list.
 func (w *walk) id(o *object, s *ids, element int32) string {
-	id, n, ok := o.named("id", "an id for the "+s.what)
+	id, n, ok := o.named("id", "Enter ", "an id for the "+s.what)
 	if !ok {
 		s.complete = false
 		return ""
@@ -502,7 +502,7 @@ func (w *walk) otherLimit(l *OtherLimit, n int32) {
 	if !o.open(w.reader, n, "a limit") {
 		return
 	}
-	l.Name, _, _ = o.named("name", "the name of the part")
+	l.Name, _, _ = o.named("name", "Enter ", "the name of the part")
 	l.MaxVoltageV = or(o.number("max_voltage_v", "the maximum voltage of the part", must, aboveZero), zero)
 	l.Source, _ = o.text("source", "where the limit comes from", must)
 	o.close()
@@ -606,12 +606,12 @@ func (w *walk) answer(a *Answer, n int32) {
 		return
 	}
 	var at int32
-	a.Pointer, at, _ = o.named("pointer", "the pointer of the question")
+	a.Pointer, at, _ = o.named("pointer", "Enter ", "the pointer of the question")
 	if a.Pointer != "" && !isPointer(a.Pointer) {
 		w.faultAt(at, quote(a.Pointer), aPointer, "An answer names its question by a JSON Pointer such as /modules/0/voc_v.")
 	}
 	a.ValueAsked = w.valueAsked(&o)
-	a.Reason, _, _ = o.named("reason", "the reason of the answer")
+	a.Reason, _, _ = o.named("reason", "Enter ", "the reason of the answer")
 	o.close()
 }
 
