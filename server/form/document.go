@@ -158,7 +158,7 @@ func (w *writer) reading(at, typed, chosen string, kind Kind) (value []byte, uni
 	own, known := sameUnit(own, kind)
 	switch {
 	case err != nil:
-		return refuse(quoted(typed), "a number, such as "+example(kind), fmt.Sprintf("%s cannot be read as a number: %v.", quoted(typed), err))
+		return refuse(quoted(typed), "a number, such as "+sampleOf(kind), fmt.Sprintf("%s cannot be read as a number: %v.", quoted(typed), err))
 	case !known:
 		return refuse(quoted(typed), "one of "+strings.Join(Units(at), ", "),
 			fmt.Sprintf("%s is typed with the unit %s, which this value is not stated in.", quoted(typed), own))

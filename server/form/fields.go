@@ -160,14 +160,15 @@ func (n *node) kid(name string) *node {
 // "/unit"; nil where the form has no field there.
 func find(pointer string) (field *node, at, below string) {
 	n, rest := &document, pointer
-	for rest != "" && n.kids != nil {
+	for strings.HasPrefix(rest, "/") && n.kids != nil {
 		var name string
 		name, rest = cutSegment(rest)
 		if n = n.kid(unescape(name)); n == nil {
 			return nil, "", ""
 		}
 		if n.list {
-			if _, rest = cutSegment(rest); rest == "" {
+			name, rest = cutSegment(rest)
+			if _, ok := index(name); !ok {
 				return nil, "", ""
 			}
 		}

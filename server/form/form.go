@@ -84,7 +84,7 @@ func FromValues(values url.Values) (*Form, error) {
 	root := &branch{}
 	entries := 0
 	for name := range values {
-		if root.insert(&document, name, values.Get(name), &entries); entries > MaxEntries {
+		if root.insert(name, values.Get(name), &entries); entries > MaxEntries {
 			return nil, ErrTooMany
 		}
 		if pointer, ok := strings.CutPrefix(name, "/sources/"); ok && !strings.Contains(pointer, "/") {
@@ -109,34 +109,18 @@ type branch struct {
 }
 
 // insert puts a text where its name belongs; a name that no field has is left aside.
-func (b *branch) insert(n *node, name, typed string, entries *int) {
-	if !strings.HasPrefix(name, "/") {
+func (b *branch) insert(name, typed string, entries *int) {
+	field, _, below := find(name)
+	if field == nil || below != "" && (!field.kind.twoPart() || below != "/value" && below != "/unit") {
 		return
 	}
 	for rest := name; rest != ""; {
 		var segment string
 		segment, rest = cutSegment(rest)
-		if n.kids == nil { // a field; what follows may be its value or unit
-			if !n.kind.twoPart() || rest != "" || segment != "value" && segment != "unit" {
-				return
-			}
-			b = b.kid(segment)
-			break
-		}
-		if n = n.kid(segment); n == nil {
-			return
+		if _, isEntry := index(segment); isEntry && b.kids[segment] == nil {
+			*entries++
 		}
 		b = b.kid(segment)
-		if n.list {
-			segment, rest = cutSegment(rest)
-			if _, ok := index(segment); !ok || rest == "" {
-				return
-			}
-			if b.kids[segment] == nil {
-				*entries++
-			}
-			b = b.kid(segment)
-		}
 	}
 	b.text = typed
 }

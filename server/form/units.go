@@ -50,8 +50,8 @@ func sameUnit(unit string, kind Kind) (string, bool) {
 	return unit, false
 }
 
-// example returns what a value of the kind looks like.
-func example(kind Kind) string {
+// sampleOf returns what a value of the kind looks like.
+func sampleOf(kind Kind) string {
 	if kind == Coefficient {
 		return "−0.27"
 	}
