@@ -85,6 +85,8 @@ func change(f *form.Form, do string) (focus string, err error) {
 	case "copy":
 		focus = at
 		done = f.CopyFirst(at)
+	case "show": // as it is, without its faults
+		done = true
 	}
 	if !done {
 		return "", badRequest("The form has no such part, or no room for another one.", fmt.Errorf("do %q", do))
@@ -128,6 +130,7 @@ func (s *Server) showCarried(w http.ResponseWriter, r *http.Request, title strin
 		return s.showJudged(w, r, j)
 	}
 	page := views.CarriedPage{Base: newBase(titled(title, f), r.URL.Path), Here: r.URL.Path}
+	page.Base.Styles = append(page.Base.Styles, static.URL("sheet.css"))
 	for _, name := range f.Names("/") {
 		page.Carried = append(page.Carried, views.HiddenField{Name: name, Value: f.Text(name)})
 	}
@@ -250,12 +253,12 @@ func postedForm(r *http.Request) (*form.Form, error) {
 // newBase is what the pages of the site have around them.
 func newBase(title, here string) views.Base {
 	return views.Base{
-		Title:      title,
-		Here:       here,
-		Stylesheet: static.URL("rimeline.css"),
-		Scripts:    []string{static.URL("htmx.js"), static.URL("rimeline.js")},
-		Icon:       static.URL("icon.svg"),
-		Wide:       here == "/design" || here == "/example",
+		Title:   title,
+		Here:    here,
+		Styles:  []string{static.URL("rimeline.css"), static.URL("answer.css")},
+		Scripts: []string{static.URL("htmx.js"), static.URL("rimeline.js")},
+		Icon:    static.URL("icon.svg"),
+		Wide:    here == "/design" || here == "/example",
 	}
 }
 

@@ -137,7 +137,7 @@ func (b *pageBuilder) entries(list string, group func(k int, at string) views.Gr
 		at := pointerOf(list, k)
 		groups[k] = group(k, at)
 		groups[k].ID = views.FieldID(at)
-		for _, name := range []string{"/id", "/module", "/inverter"} { // the references and ids that are kept without being shown
+		for _, name := range []string{"/id", "/module", "/inverter", "/unit"} { // what is kept without being shown
 			shown := slices.ContainsFunc(groups[k].Fields, func(f views.Field) bool { return f.Name == at+name })
 			if !shown && b.form.Has(at+name) {
 				groups[k].Hidden = append(groups[k].Hidden, views.HiddenField{Name: at + name, Value: b.form.Text(at + name)})
@@ -169,6 +169,9 @@ func (b *pageBuilder) inverter(k int, at string) views.Group {
 			append(b.fields(at, inverterMore), b.source(at, "Where these values come from")))},
 		Groups: b.entries(at+"/trackers", b.tracker),
 		Add:    b.adding(at+"/trackers", "Add a tracker", ""),
+	}
+	for i := range g.Fields {
+		g.Fields[i].Renews = g.Fields[i].Name == at+"/quantity"
 	}
 	if b.form.Len("/inverters") > 1 {
 		g.Heading, g.Class = fmt.Sprintf("Inverter %d", k+1), "entry"
@@ -246,11 +249,29 @@ func (b *pageBuilder) wired(k int, at string) views.Group {
 	if b.form.Len("/inverters") > 1 {
 		choose("inverter", "To inverter", b.inverterChoices())
 	}
-	count("unit", "Unit")
+	if b.severalUnits() {
+		count("unit", "Unit")
+	}
 	choose("tracker", "To tracker", b.trackerChoices())
 	count("modules_in_series", "In series")
 	count("strings_in_parallel", "In parallel")
 	return g
+}
+
+// severalUnits reports whether strings must say on which of several equal inverters
+// they are; they must not be kept from it where that has a fault.
+func (b *pageBuilder) severalUnits() bool {
+	for k := range b.form.Len("/inverters") {
+		if n := strings.TrimSpace(b.form.Text(pointerOf("/inverters", k) + "/quantity")); n != "" && n != "1" {
+			return true
+		}
+	}
+	for k := range b.form.Len("/strings") {
+		if at := pointerOf("/strings", k) + "/unit"; b.form.Text(at) != "1" || b.marked[at] != nil {
+			return true
+		}
+	}
+	return false
 }
 
 func (b *pageBuilder) margins() views.Section {
@@ -352,6 +373,9 @@ func (b *pageBuilder) field(at string, q inquiry) views.Field {
 		Width:  q.width,
 		Fault:  strings.Join(b.marked[pointer], " "),
 	}
+	if k, err := strconv.Atoi(lastSegment(at)); err == nil && k > 0 && !strings.HasPrefix(at, "/modules") {
+		f.Hint = "" // the first entry of the list says it
+	}
 	if b.focus != "" && at == b.focus {
 		f.Focus, b.focus = true, ""
 	}
@@ -410,7 +434,12 @@ func (b *pageBuilder) unitChoices(name string, units []string, kind form.Kind) [
 	for _, u := range units {
 		choices = append(choices, [2]string{u, u})
 	}
-	return b.chosen(name, choices)
+	made := b.chosen(name, choices)
+	if made[0].Value == "" && kind == form.Difference {
+		made = made[1:] // °C, in which differences are nearly always stated
+		made[0].Chosen = true
+	}
+	return made
 }
 
 func (b *pageBuilder) moduleChoices() [][2]string {

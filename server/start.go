@@ -9,7 +9,7 @@ import (
 // showStart shows the first page.
 func (s *Server) showStart(w http.ResponseWriter, r *http.Request) error {
 	base := newBase("Size strings of rooftop PV arrays", "/")
-	base.Scripts = nil // nothing on it needs any
+	base.Styles, base.Scripts = base.Styles[:1], nil // nothing on it needs more
 	return s.render(w, r, http.StatusOK, views.Start(views.StartPage{Base: base, Cautions: standingCautions}))
 }
 

@@ -32,6 +32,7 @@ type Field struct {
 	Twin    *Twin       // the same value in another unit, nil where there is none
 	Fault   string      // what is wrong with it
 	Rename  string      // name of the hidden field that keeps the value as the page has it; "" for none
+	Renews  bool        // which fields other parts of the form have depends on it
 	Slot    string      // id of the place for questions about the value; "" where none are asked
 	Asked   []Asked
 }
@@ -81,8 +82,8 @@ type Button struct {
 	Focus  bool   // takes the focus when the page opens
 }
 
-// describedBy are the attributes of an input that lead to its hint, fault and twin.
-func describedBy(f Field) templ.Attributes {
+// inputAttributes lead from an input to its hint, fault and twin, and say what else it does.
+func inputAttributes(f Field) templ.Attributes {
 	var by []string
 	if f.Fault != "" {
 		by = append(by, f.ID+"-fault")
@@ -102,6 +103,11 @@ func describedBy(f Field) templ.Attributes {
 	}
 	if f.Focus {
 		a["autofocus"] = true
+	}
+	if f.Renews {
+		a["hx-post"], a["hx-vals"], a["hx-trigger"] = "/design", `{"do": "show"}`, "change"
+		a["hx-target"], a["hx-select"], a["hx-swap"] = "#strings", "#strings", "outerHTML"
+		a["hx-select-oob"] = "#planes" // the names that strings refer to must be of the same moment
 	}
 	return a
 }

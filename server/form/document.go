@@ -88,7 +88,8 @@ func (w *writer) object(n *node, at string) {
 		}
 	}
 	if at == "" {
-		if sources := w.form.Names("/sources/"); len(sources) > 0 {
+		sources := slices.DeleteFunc(w.form.Names("/sources/"), func(name string) bool { return blank(w.form.texts[name]) })
+		if len(sources) > 0 {
 			member("sources")
 			w.sources(sources)
 		}
