@@ -80,12 +80,12 @@ func coldest(d *design.Design) []string {
 	if d.Site.Station != "" {
 		station = " at " + d.Site.Station
 	}
-	const share = "In a run of winters whose coldest hours scatter as extremes usually do (Gumbel's distribution), about 43" + nbsp + "% go below their mean"
+	const share = "In a run of winters whose coldest hours scatter as extremes usually do (Gumbel's distribution), about 43" + nbsp + "% go below the mean"
 	switch d.Site.ColdestBasis {
 	case design.ColdestRecordLow:
 		return []string{
 			at + " is stated as the record low" + station + ": the coldest that was ever written down there.",
-			"The other usual statistic, the annual extreme mean minimum, is warmer and may permit a longer string. It is a mean of each winter's coldest hour. " + share + ", mostly before the sun is up. A record, too, can be broken.",
+			"The other usual statistic, the annual extreme mean minimum, is warmer and may permit a longer string: it is the mean of each winter's coldest hour. " + share + ", in an hour with little sun. A record, too, can be broken.",
 		}
 	case design.ColdestMeanMinimum:
 		words := at + " is stated as the annual extreme mean minimum" + station + ": the mean of each winter's coldest hour."
@@ -94,7 +94,7 @@ func coldest(d *design.Design) []string {
 		}
 		return []string{
 			words,
-			share + "; little sun falls in that hour, which is why many accept it. The record low is colder and may permit fewer modules: look at how far below the coldest the ceiling is met.",
+			share + ". Little sun falls in that hour, which is why many accept it. The record low is colder and may permit fewer modules: look at how far below the coldest the ceiling is met.",
 		}
 	case design.BasisAuthority:
 		return []string{at + " is stated as what the authority requires" + station + ". Whether it is a record or a mean of extremes is for the authority to say; a mean is undercut in about 43" + nbsp + "% of winters."}

@@ -292,6 +292,11 @@ func (c *composer) fittingChart(f fitting) chart {
 	voc.Points = points(
 		drawing.VoltagePoint{AtC: place(cold), V: n * place(row.ModuleVocColdV)},
 		drawing.VoltagePoint{AtC: stcC, V: n * place(m.VocV)})
+	for _, step := range row.Steps {
+		if step.Symbol == "Voc,hot" {
+			voc.Points = points(append(voc.Points, drawing.VoltagePoint{AtC: place(hot), V: n * place(step.Value)})...)
+		}
+	}
 	if row.ReachedAtC != nil && !c.byTable() {
 		c.addMeeting(&ch, &voc, longest+" in series", *row.ReachedAtC, &row.VoltageCeilingV)
 	}

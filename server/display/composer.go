@@ -224,6 +224,7 @@ func (c *composer) turns(k *working.Check, atLeast bool) []string {
 	var near []turning
 	var far []string
 	own := c.subject(k.About)
+	of := map[string][]string{} // the entries that share a turning point in words
 	for _, t := range k.Turns {
 		f, known := c.field(t.Pointer)
 		if !known {
@@ -231,11 +232,20 @@ func (c *composer) turns(k *working.Check, atLeast bool) []string {
 			continue
 		}
 		name := own.call(f)
+		if f.entry && own.entry == "" {
+			name = f.name
+		}
 		w := turning{rank: 2, text: c.turn(t, f, name, broken(k, atLeast))}
 		if t.ChangePct != nil {
 			w.share = t.ChangePct.Abs()
 		}
 		switch {
+		case f.entry && own.entry == "":
+			w.rank = 0
+			of[w.text] = append(of[w.text], f.owner)
+			if len(of[w.text]) > 1 {
+				continue
+			}
 		case f.whole:
 			w.rank = 0
 		case f.degree:
@@ -251,6 +261,12 @@ func (c *composer) turns(k *working.Check, atLeast bool) []string {
 	slices.SortStableFunc(near, func(a, b turning) int { return cmp.Or(cmp.Compare(a.rank, b.rank), a.share.Cmp(b.share)) })
 	var words []string
 	for _, w := range near {
+		switch owners := of[w.text]; {
+		case len(owners) > 0 && len(owners) == own.entries:
+			w.text += " of any of its strings"
+		case len(owners) > 0:
+			w.text += " of " + list(owners)
+		}
 		words = append(words, w.text)
 	}
 	if len(far) > 0 {
@@ -322,7 +338,8 @@ func turnPlaces(f field) int {
 func (c *composer) about(all []working.About) string {
 	var order []string
 	terminals := map[string][]terminal{}
-	var others []string
+	var planes []string
+	var units []terminal
 	for _, a := range all {
 		switch {
 		case a.String >= 0 && a.String < len(c.d.Strings):
@@ -338,9 +355,9 @@ func (c *composer) about(all []working.About) string {
 			}
 			terminals[""] = append(terminals[""], terminal{a.Inverter, a.Unit, a.Tracker})
 		case a.Inverter != "":
-			others = append(others, c.unit(a.Inverter, a.Unit))
+			units = append(units, terminal{inverter: a.Inverter, unit: a.Unit})
 		case a.Plane != "":
-			others = append(others, c.plane(a.Plane))
+			planes = append(planes, c.plane(a.Plane))
 		}
 	}
 	var words []string
@@ -351,8 +368,11 @@ func (c *composer) about(all []working.About) string {
 		}
 		words = append(words, at)
 	}
-	if len(others) > 0 {
-		words = append(words, list(others))
+	if len(units) > 0 {
+		words = append(words, c.units(units))
+	}
+	if len(planes) > 0 {
+		words = append(words, list(planes))
 	}
 	return capital(strings.Join(words, "; "))
 }

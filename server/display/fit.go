@@ -82,24 +82,39 @@ func (c *composer) where(f fitting) string {
 			planes = list(words)
 		}
 	}
-	where := capital(planes) + " on " + c.anyOf(f.terminals)
-	if v := c.inverterByID(f.row.Inverter); v != nil && v.Quantity > 1 {
-		where += " of each of the " + counted(v.Quantity, "inverter", "inverters")
+	ids := make([]string, len(f.terminals))
+	for i, t := range f.terminals {
+		ids[i] = t.tracker
 	}
-	return where
+	return capital(planes) + " on " + c.anyOf(f.row.Inverter, ids) + c.ofEach(f.row.Inverter)
 }
 
-// anyOf names trackers of which a string takes one: "tracker t1 or t2", "each tracker, t1 to t12".
-func (c *composer) anyOf(all []terminal) string {
-	words := c.terminals(all)
-	ids, several := strings.CutPrefix(words, "trackers ")
-	if !several {
+// anyOf names trackers of which a string takes one: "tracker t1 or t2", "each
+// tracker, t1 to t12".
+func (c *composer) anyOf(inverter string, ids []string) string {
+	words := c.trackerRange(inverter, ids)
+	several, is := strings.CutPrefix(words, "trackers ")
+	switch {
+	case !is:
 		return words
+	case strings.Contains(several, " to "):
+		return "each tracker, " + several + ","
 	}
-	if strings.Contains(ids, " to ") {
-		return "each tracker, " + ids
+	return "tracker " + strings.Replace(several, " and ", " or ", 1)
+}
+
+// ofEach tells of which inverters where that needs saying.
+func (c *composer) ofEach(inverter string) string {
+	v := c.inverterByID(inverter)
+	switch {
+	case v != nil && v.Quantity > 1 && c.severalI:
+		return " of each of the " + strconv.FormatInt(v.Quantity, 10) + nbsp + c.inverter(inverter)
+	case v != nil && v.Quantity > 1:
+		return " of each of the " + counted(v.Quantity, "inverter", "inverters")
+	case c.severalI:
+		return " of " + c.inverter(inverter)
 	}
-	return "tracker " + strings.Replace(ids, " and ", " or ", 1)
+	return ""
 }
 
 // fit tells one limits row.

@@ -20,6 +20,7 @@ type field struct {
 	whole   bool            // a count
 	degree  bool            // a temperature, which a percentage says nothing about
 	site    bool            // a temperature of the site, not a difference
+	entry   bool            // of a strings entry
 }
 
 // called returns the field's name with its owner where it needs one.
@@ -140,6 +141,9 @@ func takeInventory(d *design.Design) *inventory {
 		l := listing{at: "/strings/" + strconv.Itoa(i), owner: owner(len(d.Strings) > 1, stringsMark(i))}
 		l.count("/modules_in_series", "modules in series", d.Strings[i].ModulesInSeries)
 		l.count("/strings_in_parallel", "strings in parallel", d.Strings[i].StringsInParallel)
+		for k := range l.fields {
+			l.fields[k].entry = true
+		}
 		inv.strings = append(inv.strings, l.part)
 	}
 	return inv

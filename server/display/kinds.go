@@ -150,17 +150,15 @@ func (c *composer) voltageCeiling(k *working.Check) string {
 
 // reached tells the temperature at which the string meets the ceiling.
 func (c *composer) reached(k *working.Check) string {
-	if k.ReachedAtC == nil {
-		return c.neverReached("It")
+	switch {
+	case k.ReachedAtC != nil:
+		return "It " + c.reachedWords(*k.ReachedAtC) + "."
+	case !c.byTable():
+		return "It would meet it only below " + wholeDegrees(-60) + "."
+	case broken(k, false):
+		return "It exceeds it in every row of the table."
 	}
-	return "It " + c.reachedWords(*k.ReachedAtC) + "."
-}
-
-func (c *composer) neverReached(what string) string {
-	if c.byTable() {
-		return "No row of the table tells where it would meet it."
-	}
-	return what + " would meet it only below " + wholeDegrees(-60) + "."
+	return "No row of the table, down to " + wholeDegrees(-40) + ", exceeds it."
 }
 
 // reachedWords tells a temperature at which the ceiling is met, and how far from the coldest that is.
@@ -205,10 +203,13 @@ func (c *composer) fewestModules(fewest *int64, k *working.Check) string {
 func (c *composer) headroom(k *working.Check) string {
 	wished := withUnit(stated(*k.Limit), "°C")
 	if k.Value == nil || k.ReachedAtC == nil {
-		if c.byTable() {
-			return "The ceiling is met at no row of the table that could be named."
+		switch {
+		case !c.byTable():
+			return "The ceiling would be met only below " + wholeDegrees(-60) + "; " + wished + " of headroom are asked for."
+		case k.Verdict == working.Caution:
+			return "There is none: every row of the table exceeds the ceiling."
 		}
-		return "The ceiling would be met only below " + wholeDegrees(-60) + "; " + wished + " of headroom are asked for."
+		return "No row of the table, down to " + wholeDegrees(-40) + ", exceeds the ceiling."
 	}
 	if k.Value.Sign() < 0 {
 		return "There is none: the ceiling is met " + degreesApart(k.Value.Neg(), quantity.Up) + " above the coldest already."
@@ -336,7 +337,12 @@ func (c *composer) backFeed(k *working.Check) string {
 	}
 	s += ": " + under(k) + " the " + limitOf(k) + " of its modules' maximum series fuse, so each string needs a fuse"
 	if least := stepValue(k, "Ifuse,min"); least != nil {
-		s += " of at least " + amperes(*least, quantity.Up) + " and at most " + limitOf(k)
+		between := "at least " + amperes(*least, quantity.Up) + " and at most " + limitOf(k)
+		if k.Limit.Less(*least) {
+			s += "; none can be " + between
+		} else {
+			s += " of " + between
+		}
 	}
 	if t := c.trackerOfString(k.About.String); t != nil && t.StringFuseA != nil {
 		return s + ". Stated is " + statedIn(*t.StringFuseA, "A") + "."

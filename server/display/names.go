@@ -98,19 +98,26 @@ func (n *names) trackerByID(inverter, tracker string) (*design.Tracker, int) {
 	return nil, -1
 }
 
-// unit returns what one installed inverter is called.
-func (n *names) unit(inverter string, unit int64) string {
-	name := "the inverter"
-	if n.severalI {
-		name = "inverter " + n.inverter(inverter)
-	}
-	if v := n.inverterByID(inverter); v != nil && v.Quantity > 1 {
-		if !n.severalI {
-			name = "inverter"
+// units calls installed inverters together: "the inverter", "inverter units 1 to 3",
+// "QP-12K units 1 and 2; QP-8K".
+func (n *names) units(all []terminal) string {
+	var words []string
+	for i := 0; i < len(all); {
+		id := all[i].inverter
+		var units []int64
+		for ; i < len(all) && all[i].inverter == id; i++ {
+			units = append(units, all[i].unit)
 		}
-		name += " unit" + nbsp + strconv.FormatInt(unit, 10)
+		name := "the inverter"
+		if n.severalI {
+			name = n.inverter(id)
+		}
+		if v := n.inverterByID(id); v != nil && v.Quantity > 1 {
+			name = strings.TrimPrefix(name, "the ") + " " + unitRange(units)
+		}
+		words = append(words, name)
 	}
-	return name
+	return strings.Join(words, "; ")
 }
 
 // terminal is one tracker of one installed inverter; unit 0 is any unit.

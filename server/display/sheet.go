@@ -282,7 +282,7 @@ func (c *composer) totals() []views.TotalRow {
 				return s.Inverter == t.inverter && s.Unit == t.unit && s.Tracker == t.tracker
 			}))
 	}
-	for _, u := range c.units() {
+	for _, u := range c.unitsInUse() {
 		room := ""
 		if v := c.inverterByID(u.inverter); v.MaxDCPowerW != nil {
 			room = "of " + kilowatts(*v.MaxDCPowerW)
@@ -298,8 +298,8 @@ func (c *composer) totals() []views.TotalRow {
 	return append(rows, all)
 }
 
-// units returns the inverter units that strings are on.
-func (c *composer) units() []terminal {
+// unitsInUse returns the inverter units that strings are on.
+func (c *composer) unitsInUse() []terminal {
 	var all []terminal
 	for _, t := range c.inUse() {
 		all = appendNew(all, terminal{inverter: t.inverter, unit: t.unit})
@@ -326,7 +326,7 @@ func (c *composer) reconciled() string {
 			return s.Inverter == t.inverter && s.Unit == t.unit && s.Tracker == t.tracker
 		}))
 	}
-	for _, u := range c.units() {
+	for _, u := range c.unitsInUse() {
 		inverters = append(inverters, c.modulesOf(func(s *design.StringEntry) bool { return s.Inverter == u.inverter && s.Unit == u.unit }))
 	}
 	s := "Modules by plane " + sum(planes) + ", by tracker " + sum(trackers) + ", by inverter " + sum(inverters) + ", in the schedule " + strconv.FormatInt(all, 10)

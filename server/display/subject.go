@@ -12,6 +12,8 @@ import (
 // not name again, because the check's subject names them. "" is no such place.
 type subject struct {
 	entry, inverter, tracker, plane, module string // pointers
+
+	entries int // strings entries that it covers
 }
 
 // call names a field: without its owner where the subject is the owner.
@@ -65,6 +67,7 @@ func (c *composer) findSubject(a working.About) subject {
 	if _, k := c.trackerByID(inverter, tracker); k >= 0 {
 		s.tracker = s.inverter + "/trackers/" + strconv.Itoa(k)
 	}
+	s.entries = len(entries)
 	if len(entries) == 1 {
 		s.entry = "/strings/" + strconv.Itoa(entries[0])
 	}

@@ -66,23 +66,28 @@ type placed struct {
 // placer puts labels one after another; each takes the best place left. Two never
 // overlap and none leaves its box.
 type placer struct {
-	taken []Box      // by labels
-	ink   [][2]Point // lines that a label had better not cover
+	taken []Box // by labels
+	ink   []ink // lines that a label had better not cover
 }
 
-func (p *placer) addInk(lines ...[]Point) {
-	for _, line := range lines {
-		for i := 1; i < len(line); i++ {
-			p.ink = append(p.ink, [2]Point{line[i-1], line[i]})
-		}
+// ink is a straight line on the drawing, and what it costs to cover it.
+type ink struct {
+	from, to Point
+	cost     float64
+}
+
+func (p *placer) addInk(line []Point, cost float64) {
+	for i := 1; i < len(line); i++ {
+		p.ink = append(p.ink, ink{line[i-1], line[i], cost})
 	}
 }
 
 // Costs of a place, in millimetres of distance that one would accept to avoid it.
 const (
-	inkCost    = 14.0
-	choiceCost = 1.5 // for each point that is liked less
-	leaderFrom = 3.2 // mm from its point, beyond which a label needs a leader
+	hairCost   = 9.0  // a hairline under a label
+	lineCost   = 26.0 // a line that the drawing is about
+	choiceCost = 1.5  // for each point that is liked less
+	leaderFrom = 3.2  // mm from its point, beyond which a label needs a leader
 )
 
 // offset is where a label stands in relation to its point.
@@ -144,7 +149,7 @@ func (p *placer) place(l label) (placed, bool) {
 	out := placed{text: l.text}
 	if end, distance := best.nearest(bestNear); l.leader && distance > leaderFrom {
 		out.leader = []Point{bestNear, end}
-		p.addInk(out.leader)
+		p.addInk(out.leader, hairCost)
 	}
 	return out, true
 }
@@ -180,8 +185,8 @@ func (p *placer) isTaken(b Box) bool {
 func (p *placer) inkUnder(b Box, limit float64) float64 {
 	cost := 0.0
 	for _, s := range p.ink {
-		if b.crosses(s[0], s[1]) {
-			if cost += inkCost; cost >= limit {
+		if b.crosses(s.from, s.to) {
+			if cost += s.cost; cost >= limit {
 				break
 			}
 		}

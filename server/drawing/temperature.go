@@ -204,7 +204,7 @@ func (d *chartDraft) drawWindows() {
 func (d *chartDraft) drawLevel(pen Pen, v float64) {
 	line := d.across(v)
 	d.add(Path{"limit", pen, [][]Point{line}})
-	d.placer.addInk(line)
+	d.placer.addInk(line, hairCost)
 }
 
 // drawVoltAxis numbers the voltage axis in round steps.
@@ -240,7 +240,7 @@ func (d *chartDraft) drawCeiling() {
 	forbidden := Box{d.plot.Min, Point{d.plot.Max.X, y}}
 	d.add(Path{"forbidden", hatchPen, hatch(forbidden, hatchSpacing)},
 		Path{"ceiling", ceilingPen, [][]Point{d.across(d.Ceiling.V)}})
-	d.placer.addInk(d.across(d.Ceiling.V))
+	d.placer.addInk(d.across(d.Ceiling.V), lineCost)
 	d.placer.taken = append(d.placer.taken, forbidden)
 }
 
@@ -264,7 +264,7 @@ func (d *chartDraft) drawMarks() {
 			pen = finePen
 		}
 		d.add(Path{"mark", pen, [][]Point{line}})
-		d.placer.addInk(line)
+		d.placer.addInk(line, hairCost)
 	}
 }
 
@@ -281,10 +281,10 @@ func (d *chartDraft) drawLines() {
 		if line.Beyond != nil {
 			further := []Point{{d.x(line.Beyond.AtC), d.y(line.Beyond.V)}, points[0]}
 			d.add(Path{role, beyondPen, [][]Point{further}})
-			d.placer.addInk(further)
+			d.placer.addInk(further, lineCost)
 		}
 		d.add(Path{role, pen, [][]Point{points}})
-		d.placer.addInk(points)
+		d.placer.addInk(points, lineCost)
 		for _, p := range points {
 			d.add(Dot{role, p, pointRadius, line.Kind == Operating})
 		}
@@ -329,17 +329,20 @@ func (d *chartDraft) nameLimits() {
 		d.nameLimitsBeside()
 		return
 	}
-	inside := append([]Level{d.Ceiling}, d.Levels...)
-	for _, w := range d.Windows {
-		inside = append(inside, Level{w.Max.V, w.Text})
+	name := func(l Level, edges ...float64) {
+		var near []Point
+		for _, v := range edges {
+			y := d.y(v)
+			near = append(near, Point{d.plot.Max.X - 16, y}, Point{d.plot.Max.X - 32, y}, Point{d.plot.Min.X + 16, y}, Point{d.plot.Min.X + 32, y})
+		}
+		d.name(label{text: d.limitText(l), near: near, within: d.plot, leader: true})
 	}
-	for _, l := range inside {
-		y := d.y(l.V)
-		d.name(label{
-			text:   d.limitText(l),
-			near:   []Point{{d.plot.Max.X - 16, y}, {d.plot.Max.X - 32, y}, {d.plot.Min.X + 16, y}, {d.plot.Min.X + 32, y}},
-			within: d.plot, leader: true,
-		})
+	name(d.Ceiling, d.Ceiling.V)
+	for _, w := range d.Windows {
+		name(Level{w.Max.V, w.Text}, w.Max.V, w.Min.V)
+	}
+	for _, l := range d.Levels {
+		name(l, l.V)
 	}
 }
 
