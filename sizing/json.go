@@ -11,8 +11,7 @@ import (
 // of the format page. A finite decimal stands in full, any other number with 12
 // significant digits. Identical results give identical bytes.
 func (r *Result) AppendJSON(dst []byte) []byte {
-	w := writer{dst}
-	w.open('{')
+	w := writer{append(dst, '{')} // whatever stands before, the result begins without a comma
 	w.text("format", ResultFormat)
 	w.text("verdict", r.Verdict.String())
 	w.list("limits", len(r.Limits), func(i int) { w.limit(&r.Limits[i]) })

@@ -37,3 +37,15 @@ type StringResult struct {
 	MaxCurrentA                quantity.Exact  // Isc with gain × 1.25 × strings in parallel
 	Verdict                    working.Verdict // the worst about the entry, its tracker, its plane and its inverter unit
 }
+
+// LeastHeadroomC returns the least distance, in °C, between the coldest temperature
+// and one at which a string would meet its ceiling; nil where no string has one.
+func (r *Result) LeastHeadroomC() *quantity.Exact {
+	var least *quantity.Exact
+	for i := range r.Checks {
+		if c := &r.Checks[i]; c.ID == "headroom" && c.Value != nil && (least == nil || c.Value.Less(*least)) {
+			least = c.Value
+		}
+	}
+	return least
+}

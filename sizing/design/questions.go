@@ -186,21 +186,21 @@ func (m *Module) valueAsked(fields []string) string {
 func (m *Module) appendField(dst []byte, field string) []byte {
 	switch field {
 	case "pmax_w":
-		return m.PmaxW.AppendJSON(dst)
+		return appendNumber(dst, m.PmaxW)
 	case "voc_v":
-		return m.VocV.AppendJSON(dst)
+		return appendNumber(dst, m.VocV)
 	case "isc_a":
-		return m.IscA.AppendJSON(dst)
+		return appendNumber(dst, m.IscA)
 	case "vmp_v":
-		return m.VmpV.AppendJSON(dst)
+		return appendNumber(dst, m.VmpV)
 	case "imp_a":
-		return m.ImpA.AppendJSON(dst)
+		return appendNumber(dst, m.ImpA)
 	case "cells_in_series":
-		return quantity.Int(*m.CellsInSeries).AppendJSON(dst)
+		return appendNumber(dst, quantity.Int(*m.CellsInSeries))
 	case "length_mm":
-		return m.LengthMM.AppendJSON(dst)
+		return appendNumber(dst, *m.LengthMM)
 	case "width_mm":
-		return m.WidthMM.AppendJSON(dst)
+		return appendNumber(dst, *m.WidthMM)
 	case "voc_temp_coeff":
 		return m.VocCoeff.appendAsked(dst)
 	case "isc_temp_coeff":
@@ -215,5 +215,5 @@ func (c *Coefficient) appendAsked(dst []byte) []byte {
 	dst = append(dst, `{"unit":`...)
 	dst = working.AppendJSONString(dst, c.UnitText)
 	dst = append(dst, `,"value":`...)
-	return append(c.Value.AppendJSON(dst), '}')
+	return append(appendNumber(dst, c.Value), '}')
 }

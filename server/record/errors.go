@@ -1,0 +1,28 @@
+package record
+
+import (
+	"crypto/sha256"
+	"errors"
+	"fmt"
+)
+
+// Kinds of error that a caller can do something about. The store maps the
+// database's errors to them, the server maps them to answers; any other error is
+// a fault of ours.
+var (
+	ErrNotFound    = errors.New("not found")
+	ErrInvalid     = errors.New("not valid")                      // the saved form of it would break a rule
+	ErrConflict    = errors.New("in conflict with what is saved") // such as a key used for another request
+	ErrUnavailable = errors.New("the database cannot be reached") // nothing was saved, or it is not known whether
+)
+
+// StaleError tells that what an editor started from is no longer the newest: two
+// people, or two tabs, changed the same thing. It carries the number that is newest
+// now; the caller reads it and shows both.
+type StaleError struct{ Newest int64 }
+
+func (e *StaleError) Error() string {
+	return fmt.Sprintf("changed meanwhile: the newest is %d", e.Newest)
+}
+
+func hash(document []byte) [32]byte { return sha256.Sum256(document) }
