@@ -489,6 +489,7 @@ func FuzzFromDocument(f *testing.F) {
 	f.Add(example(f))
 	f.Add([]byte(everyField))
 	f.Add([]byte(`{"site": {"coldest_c": "−21 °F"}, "answers": [{}], "sources": {"": ""}}`))
+	f.Add([]byte(`{"sources": {"": " "}}`))
 	f.Add([]byte(`{"modules": [{"id": "~/ \u0000"}], "title": "\ud800"}`))
 	f.Fuzz(func(t *testing.T, doc []byte) {
 		form, _, err := FromDocument(doc)
