@@ -45,19 +45,16 @@ func (b Box) grown(margin float64) Box {
 
 // crosses reports whether the segment from p to q has a point inside the box.
 func (b Box) crosses(p, q Point) bool {
-	from, to := 0.0, 1.0
-	clip := func(start, delta, low, high float64) bool {
-		if delta == 0 {
-			return low < start && start < high
-		}
-		near, far := (low-start)/delta, (high-start)/delta
-		if near > far {
-			near, far = far, near
-		}
-		from, to = max(from, near), min(to, far)
-		return from < to
+	if max(p.X, q.X) <= b.Min.X || b.Max.X <= min(p.X, q.X) || max(p.Y, q.Y) <= b.Min.Y || b.Max.Y <= min(p.Y, q.Y) {
+		return false
 	}
-	return clip(p.X, q.X-p.X, b.Min.X, b.Max.X) && clip(p.Y, q.Y-p.Y, b.Min.Y, b.Max.Y)
+	if p.X == q.X || p.Y == q.Y {
+		return true
+	}
+	// It crosses unless all four corners lie on one side of the line through p and q.
+	side := func(x, y float64) float64 { return (q.X-p.X)*(y-p.Y) - (q.Y-p.Y)*(x-p.X) }
+	s1, s2, s3, s4 := side(b.Min.X, b.Min.Y), side(b.Max.X, b.Min.Y), side(b.Min.X, b.Max.Y), side(b.Max.X, b.Max.Y)
+	return !(s1 >= 0 && s2 >= 0 && s3 >= 0 && s4 >= 0 || s1 <= 0 && s2 <= 0 && s3 <= 0 && s4 <= 0)
 }
 
 // Pen is how a line is drawn. Lines are told apart by weight and dash, never by colour alone.

@@ -92,8 +92,9 @@ const (
 
 // offset is where a label stands in relation to its point.
 type offset struct {
-	dx, dy float64 // of the nearest edge of the label's box
-	anchor Anchor
+	dx, dy   float64 // of the nearest edge of the label's box
+	anchor   Anchor
+	distance float64 // from the point
 }
 
 // beside is how far a label above or below its point keeps from the upright through it, in millimetres.
@@ -102,19 +103,21 @@ const beside = 0.8
 // offsets are the places that are tried around a point, near ones first.
 var offsets = func() (all []offset) {
 	for _, away := range []float64{1.0, 2.6, 4.6, 7, 10, 14, 19, 25, 32, 40, 50, 62} {
-		for _, o := range []offset{{0, away, Middle}, {beside, away, Start}, {-beside, away, End}} {
-			all = append(all, offset{o.dx, -o.dy, o.anchor}, o)
+		for _, o := range []offset{
+			{dy: -away, anchor: Middle}, {dy: away, anchor: Middle},
+			{dx: beside, dy: -away, anchor: Start}, {dx: beside, dy: away, anchor: Start},
+			{dx: -beside, dy: -away, anchor: End}, {dx: -beside, dy: away, anchor: End},
+			{dx: away, anchor: Start}, {dx: -away, anchor: End},
+			{dx: away, dy: -away, anchor: Start}, {dx: -away, dy: -away, anchor: End},
+			{dx: away, dy: away, anchor: Start}, {dx: -away, dy: away, anchor: End},
+		} {
+			o.distance = math.Hypot(o.dx, o.dy)
+			all = append(all, o)
 		}
-		all = append(all, offset{away, 0, Start}, offset{-away, 0, End},
-			offset{away, -away, Start}, offset{-away, -away, End}, offset{away, away, Start}, offset{-away, away, End})
 	}
-	slices.SortStableFunc(all, func(a, b offset) int { return cmp.Compare(a.distance(), b.distance()) })
+	slices.SortStableFunc(all, func(a, b offset) int { return cmp.Compare(a.distance, b.distance) })
 	return all
 }()
-
-func (o offset) distance() float64 {
-	return math.Hypot(o.dx, o.dy)
-}
 
 // place finds the best free place for the label and takes it. It reports false
 // where there is none.
@@ -124,7 +127,7 @@ func (p *placer) place(l label) (placed, bool) {
 	best, bestCost, bestNear := Box{}, math.Inf(1), Point{}
 	for i, near := range l.near {
 		for _, o := range offsets {
-			cost := o.distance() + choiceCost*float64(i)
+			cost := o.distance + choiceCost*float64(i)
 			if cost >= bestCost {
 				break
 			}

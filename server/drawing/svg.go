@@ -1,6 +1,7 @@
 package drawing
 
 import (
+	"math"
 	"strconv"
 	"strings"
 )
@@ -134,14 +135,19 @@ func appendAttribute(dst []byte, name string, x float64) []byte {
 
 // appendMM appends a length to a hundredth of a millimetre, which no eye and no printer tells apart.
 func appendMM(dst []byte, x float64) []byte {
-	from := len(dst)
-	dst = strconv.AppendFloat(dst, x, 'f', 2, 64)
-	text := strings.TrimRight(string(dst[from:]), "0")
-	text = strings.TrimSuffix(text, ".")
-	if text == "-0" {
-		text = "0"
+	hundredths := int64(math.Round(x * 100))
+	if hundredths < 0 {
+		dst, hundredths = append(dst, '-'), -hundredths
 	}
-	return append(dst[:from], text...)
+	dst = strconv.AppendInt(dst, hundredths/100, 10)
+	tenths, rest := byte(hundredths/10%10), byte(hundredths%10)
+	switch {
+	case rest != 0:
+		dst = append(dst, '.', '0'+tenths, '0'+rest)
+	case tenths != 0:
+		dst = append(dst, '.', '0'+tenths)
+	}
+	return dst
 }
 
 var escapes = strings.NewReplacer("&", "&amp;", "<", "&lt;", ">", "&gt;", `"`, "&#34;", "'", "&#39;")
