@@ -147,7 +147,7 @@ func (t *told) textKey(id string) string {
 		b.WriteByte(1)
 	}
 	for _, s := range t.Steps {
-		b.WriteString(s.Symbol + "\x00" + s.WithNumbers + "\x00" + s.Value + "\x00")
+		b.WriteString(numberless(s.Symbol) + "\x00" + s.WithNumbers + "\x00" + s.Value + "\x00")
 	}
 	return b.String()
 }
@@ -165,6 +165,9 @@ func (c *composer) tellCheck(k *working.Check) told {
 	t.Cites = strings.Join(k.Cites, "; ")
 	t.Turns = c.turns(k, how.atLeast)
 	for _, r := range k.Reasons {
+		if broken(k, how.atLeast) && (r.Code == "stand-in-coefficient" || r.Code == "start-at-first-light") {
+			continue // the stricter look adds nothing to a limit that is broken already
+		}
 		if s := c.reason(k, r); s != "" && !slices.Contains(t.Reasons, s) {
 			t.Reasons = append(t.Reasons, s)
 		}
