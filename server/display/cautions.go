@@ -103,19 +103,3 @@ func coldest(d *design.Design) []string {
 		at + " is stated" + station + " without a named statistic. It should be the record low or the annual extreme mean minimum; an average winter low is far too warm.",
 	}
 }
-
-// hottest tells what the hottest temperature is.
-func hottest(d *design.Design) string {
-	at := statedDegrees(d.Site.Hottest) + ", "
-	switch d.Site.HottestBasis {
-	case design.HottestRecordHigh:
-		return at + "record high"
-	case design.HottestCooling2:
-		return at + "exceeded in 2" + nbsp + "% of the year's hours, about 175" + nbsp + "h"
-	case design.HottestCooling04:
-		return at + "exceeded in 0.4" + nbsp + "% of the year's hours, about 35" + nbsp + "h"
-	case design.BasisAuthority:
-		return at + "required by the authority"
-	}
-	return at + "another statistic"
-}
