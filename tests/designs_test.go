@@ -30,7 +30,7 @@ func randomDesign(n uint64) []byte {
 		d.wire(doc, o)
 	}
 	d.answer(doc, o)
-	for d.chance(0.5) {
+	for d.chance(0.4) {
 		d.sharpen(doc)
 	}
 	return documentText(doc)
@@ -343,8 +343,8 @@ func (d draw) inverter(id string) object {
 // wire adds strings entries, of lengths near those that fit; in a sound design one
 // to a tracker.
 func (d draw) wire(doc object, o *oracleDesign) {
-	n := 1 + d.few(8)
-	if d.chance(0.1) {
+	n := 1 + d.few(6)
+	if d.chance(0.03) {
 		n = 12
 	}
 	var entries list
@@ -500,6 +500,9 @@ func (d draw) sharpen(doc object) {
 		value = plus(value, times(big.NewRat(int64(nudge), 1), rat("1e-"+strconv.Itoa(len(decimals)))))
 		text, _ = decimalText(value)
 	}
+	if !positive(value) {
+		return
+	}
 	before, had := at(doc, pointer)
 	put(doc, pointer, json.Number(text))
 	if !obeysWindows(d.oracle(doc)) {
@@ -519,19 +522,9 @@ func pickAvailable(c *circuit, d draw) string {
 	return c.method()
 }
 
-// obeysWindows reports whether the fields that sharpen moves still obey the fault rules.
+// obeysWindows reports whether the trackers' windows still lie as the fault rules ask.
 func obeysWindows(o *oracleDesign) bool {
-	for _, m := range o.Modules {
-		if !positive(m.MaxSystemVoltage.Rat) || m.MaxSeriesFuse.Rat != nil && !positive(m.MaxSeriesFuse.Rat) {
-			return false
-		}
-	}
 	for _, i := range o.Inverters {
-		for _, n := range []number{i.MaxDCVoltage, i.StartVoltage, i.MaxDCPower} {
-			if n.Rat != nil && !positive(n.Rat) {
-				return false
-			}
-		}
 		for _, t := range i.Trackers {
 			window := []*big.Rat{t.MPPTMin.Rat, t.FullPowerMin.Rat, t.FullPowerMax.Rat, t.MPPTMax.Rat}
 			window = slices.DeleteFunc(window, func(r *big.Rat) bool { return r == nil })

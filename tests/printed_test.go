@@ -3,6 +3,7 @@ package tests
 import (
 	"errors"
 	"fmt"
+	"maps"
 	"math/big"
 	"strings"
 	"sync"
@@ -30,7 +31,8 @@ type (
 )
 
 // misprints are the reasons why a step is not what the format page says of steps[].
-func (s step) misprints() []string {
+// known are the symbols of the lines before it.
+func (s step) misprints(known substitution) []string {
 	var found []string
 	say := func(format string, args ...any) { found = append(found, fmt.Sprintf(format, args...)) }
 	if s.Symbol == "" || s.Expression == "" {
@@ -48,8 +50,14 @@ func (s step) misprints() []string {
 	if !printsAs(worth, s.Value) {
 		say("%s = %s, printed %s", s.WithNumbers, worth.FloatString(15), s.Value.text)
 	}
-	if !strings.Contains(s.Expression, "Σ") && shape(s.Expression) != shape(s.WithNumbers) {
-		say("%q and %q have different operators", s.Expression, s.WithNumbers)
+	expression, err := parseExpression(s.Expression)
+	if err != nil {
+		say("%v", err)
+		return found
+	}
+	numbers, _ := parseNumbers(s.WithNumbers)
+	if !maps.Clone(known).fits(expression, numbers) {
+		say("%q is not %q with the values of its symbols put in", s.WithNumbers, s.Expression)
 	}
 	return found
 }
@@ -109,10 +117,15 @@ func TestPrintsAs(t *testing.T) {
 func (w *working) misprints() map[string][]string {
 	found := map[string][]string{}
 	lines := func(of string, steps []step) {
+		known := substitution{}
 		for _, s := range steps {
-			for _, fault := range s.misprints() {
+			for _, fault := range s.misprints(known) {
 				found[of] = append(found[of], s.Symbol+": "+fault)
 			}
+			if before, ok := known[s.Symbol]; ok && before.text != s.Value.text {
+				found[of] = append(found[of], fmt.Sprintf("%s is %s and %s", s.Symbol, before.text, s.Value.text))
+			}
+			known[s.Symbol] = s.Value
 		}
 	}
 	for _, row := range w.Limits {
