@@ -1,6 +1,7 @@
 package display
 
 import (
+	"cmp"
 	"math"
 	"slices"
 	"strconv"
@@ -55,19 +56,19 @@ func (c *composer) charts(fittings []fitting) []views.Chart {
 // inUse returns the trackers that strings are on, in the design's order.
 func (c *composer) inUse() []terminal {
 	var all []terminal
-	for i := range c.d.Inverters {
-		v := &c.d.Inverters[i]
-		for unit := int64(1); unit <= v.Quantity; unit++ {
-			for k := range v.Trackers {
-				t := terminal{v.ID, unit, v.Trackers[k].ID}
-				if slices.ContainsFunc(c.d.Strings, func(s design.StringEntry) bool {
-					return terminal{s.Inverter, s.Unit, s.Tracker} == t
-				}) {
-					all = append(all, t)
-				}
-			}
+	order := map[terminal][2]int{}
+	for _, s := range c.d.Strings {
+		t := terminal{s.Inverter, s.Unit, s.Tracker}
+		if _, known := order[t]; known {
+			continue
 		}
+		_, k := c.trackerByID(s.Inverter, s.Tracker)
+		order[t] = [2]int{slices.IndexFunc(c.d.Inverters, func(v design.Inverter) bool { return v.ID == s.Inverter }), k}
+		all = append(all, t)
 	}
+	slices.SortFunc(all, func(a, b terminal) int {
+		return cmp.Or(cmp.Compare(order[a][0], order[b][0]), cmp.Compare(a.unit, b.unit), cmp.Compare(order[a][1], order[b][1]))
+	})
 	return all
 }
 

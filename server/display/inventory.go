@@ -180,6 +180,11 @@ func moduleFields(m *design.Module, i int, owner string) part {
 	} else {
 		l.add("/cells_in_series", "cells in series", "", "")
 	}
+	if m.NOCT != nil {
+		l.temperature("/noct_c", "NOCT", *m.NOCT)
+	} else {
+		l.add("/noct_c", "NOCT", "", "°C")
+	}
 	l.optional("/length_mm", "length", m.LengthMM, "mm")
 	l.optional("/width_mm", "width", m.WidthMM, "mm")
 	return l.part

@@ -1,8 +1,6 @@
 package display
 
 import (
-	"strconv"
-
 	"rimeline/sizing/design"
 	"rimeline/sizing/quantity"
 	"rimeline/sizing/working"
@@ -315,11 +313,9 @@ func (c *composer) shortCircuit(k *working.Check) string {
 }
 
 func (c *composer) inputs(k *working.Check) string {
-	strings, _ := k.Value.Int64()
-	inputs, _ := k.Limit.Int64()
-	s := countStrings(strings) + " on " + counted(inputs, "input", "inputs")
-	if strings > inputs {
-		return s + ": " + strconv.FormatInt(strings-inputs, 10) + " too many."
+	s := countedExact(*k.Value, "string", "strings") + " on " + countedExact(*k.Limit, "input", "inputs")
+	if broken(k, false) {
+		return s + ": " + stated(k.Value.Sub(*k.Limit)) + " too many."
 	}
 	return s + "."
 }
@@ -390,14 +386,12 @@ func hasReason(k *working.Check, code string) bool {
 }
 
 func (c *composer) places(k *working.Check) string {
-	placed, _ := k.Value.Int64()
-	places, _ := k.Limit.Int64()
-	s := countModules(placed) + " on " + counted(places, "place", "places")
-	switch {
-	case placed > places:
-		return s + ": " + strconv.FormatInt(placed-places, 10) + " too many."
-	case placed < places:
-		return s + ": " + counted(places-placed, "place stays", "places stay") + " empty."
+	s := countedExact(*k.Value, "module", "modules") + " on " + countedExact(*k.Limit, "place", "places")
+	switch left := k.Limit.Sub(*k.Value); left.Sign() {
+	case -1:
+		return s + ": " + stated(left.Neg()) + " too many."
+	case 1:
+		return s + ": " + countedExact(left, "place stays", "places stay") + " empty."
 	}
 	return s + ": every place is used."
 }

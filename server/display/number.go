@@ -42,8 +42,11 @@ func trueMinus(s string) string { return strings.ReplaceAll(s, "-", minus) }
 
 // withUnit joins a number and its unit so that they do not part at the end of a line.
 func withUnit(number, unit string) string {
-	if unit == "" {
+	switch unit {
+	case "":
 		return number
+	case "°": // an angle stands close
+		return number + unit
 	}
 	return number + nbsp + unit
 }
@@ -126,12 +129,14 @@ func statedDifference(d design.Difference) string {
 }
 
 // counted returns a number with the singular or plural of what it counts.
-func counted(n int64, one, many string) string {
-	number := quantity.Int(n).String()
-	if n == 1 {
-		return number + nbsp + one
+func counted(n int64, one, many string) string { return countedExact(quantity.Int(n), one, many) }
+
+// countedExact is [counted] for a count that may be too large for an int64.
+func countedExact(n quantity.Exact, one, many string) string {
+	if n.Equal(quantity.Int(1)) {
+		return withUnit(stated(n), one)
 	}
-	return number + nbsp + many
+	return withUnit(stated(n), many)
 }
 
 func countModules(n int64) string { return counted(n, "module", "modules") }

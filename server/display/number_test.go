@@ -33,6 +33,7 @@ func TestNumbers(t *testing.T) {
 		{"−60 °C", wholeDegrees(-60), "−60 °C (−76 °F)"},
 		{"a difference has no 32 in it", degreesApart(x("15.08"), quantity.Down), "15.0 °C (27.1 °F)"}, // 15.08 × 1.8 = 27.144
 		{"as stated, every digit", statedIn(x("26.0450"), "A"), "26.045 A"},
+		{"an angle", statedIn(x("30"), "°"), "30°"},
 		{"no unit", statedIn(x("12"), ""), "12"},
 		{"stated in °C", statedDegrees(design.Temperature{Value: x("-21")}), "−21 °C (−5.8 °F)"},
 		{"stated in °F", statedDegrees(design.Temperature{Value: x("-6"), Fahrenheit: true}), "−6 °F (−21.1 °C)"}, // −38 × 5 ÷ 9 = −21.11

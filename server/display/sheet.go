@@ -67,7 +67,7 @@ func (c *composer) arraySize() string {
 	if len(c.d.Strings) == 0 {
 		return "nothing strung yet"
 	}
-	s := countModules(c.modulesOf(everyString)) + ", " + kilowatts(c.powerOf(everyString)) + " DC"
+	s := countedExact(c.modulesOf(everyString), "module", "modules") + ", " + kilowatts(c.powerOf(everyString)) + " DC"
 	ac := quantity.Int(0)
 	for i := range c.d.Inverters {
 		v := &c.d.Inverters[i]
@@ -86,22 +86,30 @@ func kilowatts(w quantity.Exact) string {
 
 func everyString(*design.StringEntry) bool { return true }
 
-func (c *composer) modulesOf(which func(*design.StringEntry) bool) (n int64) {
+// modulesOf adds the modules of strings entries.
+func (c *composer) modulesOf(which func(*design.StringEntry) bool) quantity.Exact {
+	sum := quantity.Int(0)
 	for i := range c.d.Strings {
 		if s := &c.d.Strings[i]; which(s) {
-			n += s.ModulesInSeries * s.StringsInParallel
+			sum = sum.Add(modulesIn(s))
 		}
 	}
-	return n
+	return sum
 }
 
-func (c *composer) strung(which func(*design.StringEntry) bool) (n int64) {
+func modulesIn(s *design.StringEntry) quantity.Exact {
+	return quantity.Int(s.ModulesInSeries).Mul(quantity.Int(s.StringsInParallel))
+}
+
+// strung adds the strings of strings entries.
+func (c *composer) strung(which func(*design.StringEntry) bool) quantity.Exact {
+	sum := quantity.Int(0)
 	for i := range c.d.Strings {
 		if s := &c.d.Strings[i]; which(s) {
-			n += s.StringsInParallel
+			sum = sum.Add(quantity.Int(s.StringsInParallel))
 		}
 	}
-	return n
+	return sum
 }
 
 // powerOf adds the stated power of modules, W at STC.
@@ -113,7 +121,7 @@ func (c *composer) powerOf(which func(*design.StringEntry) bool) quantity.Exact 
 			continue
 		}
 		if m := c.d.Module(c.planeOfString(i).Module); m != nil {
-			sum = sum.Add(m.PmaxW.Mul(quantity.Int(s.ModulesInSeries * s.StringsInParallel)))
+			sum = sum.Add(m.PmaxW.Mul(modulesIn(s)))
 		}
 	}
 	return sum
@@ -219,7 +227,7 @@ func (c *composer) schedule() []views.ScheduleRow {
 			Tracker:    s.Tracker,
 			InSeries:   strconv.FormatInt(s.ModulesInSeries, 10),
 			Parallel:   strconv.FormatInt(s.StringsInParallel, 10),
-			Modules:    strconv.FormatInt(s.ModulesInSeries*s.StringsInParallel, 10),
+			Modules:    stated(modulesIn(&c.d.Strings[i])),
 			VocCold:    shown(s.VocColdV, placesString, quantity.Up),
 			VmpSTC:     shown(s.VmpSTCV, placesString, quantity.Nearest),
 			VmpHot:     shown(s.VmpHotV, placesString, quantity.Down),
@@ -263,8 +271,8 @@ func (c *composer) totals() []views.TotalRow {
 	total := func(of, room string, which func(*design.StringEntry) bool) views.TotalRow {
 		return views.TotalRow{
 			Of:      of,
-			Strings: strconv.FormatInt(c.strung(which), 10),
-			Modules: strconv.FormatInt(c.modulesOf(which), 10),
+			Strings: stated(c.strung(which)),
+			Modules: stated(c.modulesOf(which)),
 			Power:   kilowatts(c.powerOf(which)),
 			Room:    room,
 		}
@@ -314,11 +322,10 @@ func (c *composer) reconciled() string {
 		return ""
 	}
 	all := c.modulesOf(everyString)
-	var planes, trackers, inverters []int64
+	var planes, trackers, inverters []quantity.Exact
 	for i := range c.r.Checks {
 		if k := &c.r.Checks[i]; k.ID == "places" && k.Value != nil {
-			n, _ := k.Value.Int64()
-			planes = append(planes, n)
+			planes = append(planes, *k.Value)
 		}
 	}
 	for _, t := range c.inUse() {
@@ -329,31 +336,32 @@ func (c *composer) reconciled() string {
 	for _, u := range c.unitsInUse() {
 		inverters = append(inverters, c.modulesOf(func(s *design.StringEntry) bool { return s.Inverter == u.inverter && s.Unit == u.unit }))
 	}
-	s := "Modules by plane " + sum(planes) + ", by tracker " + sum(trackers) + ", by inverter " + sum(inverters) + ", in the schedule " + strconv.FormatInt(all, 10)
-	for _, ways := range [][]int64{planes, trackers, inverters} {
-		if added(ways) != all {
+	s := "Modules by plane " + addition(planes) + ", by tracker " + addition(trackers) + ", by inverter " + addition(inverters) + ", in the schedule " + stated(all)
+	for _, ways := range [][]quantity.Exact{planes, trackers, inverters} {
+		if !added(ways).Equal(all) {
 			return s + ". THESE DO NOT AGREE: do not use this sheet."
 		}
 	}
 	return s + ": they agree."
 }
 
-func added(parts []int64) (n int64) {
+func added(parts []quantity.Exact) quantity.Exact {
+	sum := quantity.Int(0)
 	for _, p := range parts {
-		n += p
+		sum = sum.Add(p)
 	}
-	return n
+	return sum
 }
 
-// sum writes an addition: "24 + 13 = 37"; a long one by its result alone.
-func sum(parts []int64) string {
-	total := strconv.FormatInt(added(parts), 10)
+// addition writes a sum: "24 + 13 = 37"; a long one by its result alone.
+func addition(parts []quantity.Exact) string {
+	total := stated(added(parts))
 	if len(parts) < 2 || len(parts) > 8 {
 		return total
 	}
 	words := make([]string, len(parts))
 	for i, p := range parts {
-		words[i] = strconv.FormatInt(p, 10)
+		words[i] = stated(p)
 	}
 	return strings.Join(words, " + ") + " = " + total
 }

@@ -121,6 +121,7 @@ type chartDraft struct {
 	*TemperatureChart
 	plot               Box
 	lowC, highC, highV float64
+	levels             []Level // the horizontal limits that are drawn, apart from the ceiling
 	items              []Item
 	texts              []Item // painted last
 	placer             placer
@@ -157,10 +158,11 @@ func (d *chartDraft) scale() {
 		for _, p := range line.Points {
 			see(p.AtC, p.V)
 		}
+		if line.Beyond != nil {
+			see(line.Beyond.AtC, line.Beyond.V)
+		}
 	}
-	for _, w := range d.Windows {
-		see(d.lowC, w.Max.V)
-	}
+	d.widen()
 	margin := max((d.highC-d.lowC)*0.035, 0.5)
 	d.lowC, d.highC = d.lowC-margin, d.highC+margin
 	d.highV *= 1.07
@@ -169,6 +171,29 @@ func (d *chartDraft) scale() {
 		right = d.limitsColumn() + limitsGap + 0.5
 	}
 	d.plot = Box{Point{d.left, d.top}, Point{d.width - right, d.height - d.bottom}}
+}
+
+// farthestLimit is how far above everything else, as a multiple, a limit may lie to
+// be drawn; a farther one would press all else to the ground.
+const farthestLimit = 1.6
+
+// widen makes room for limits above the ceiling and the lines, and leaves out those too far away.
+func (d *chartDraft) widen() {
+	most := d.highV * farthestLimit
+	for _, l := range d.Levels {
+		if l.V <= most {
+			d.highV = max(d.highV, l.V)
+			d.levels = append(d.levels, l)
+		}
+	}
+	for _, w := range d.Windows {
+		for _, l := range []Level{w.Max, w.Min} {
+			if l.V <= most {
+				d.highV = max(d.highV, l.V)
+				d.levels = append(d.levels, l)
+			}
+		}
+	}
 }
 
 func (d *chartDraft) x(atC float64) float64 {
@@ -187,12 +212,13 @@ func (d *chartDraft) add(items ...Item) { d.items = append(d.items, items...) }
 
 func (d *chartDraft) drawWindows() {
 	for _, w := range d.Windows {
-		d.add(Area{"window", Box{Point{d.plot.Min.X, d.y(w.Max.V)}, Point{d.plot.Max.X, d.y(w.Min.V)}}, windowShade})
-		d.drawLevel(windowPen, w.Max.V)
-		d.drawLevel(windowPen, w.Min.V)
+		top, bottom := min(w.Max.V, d.highV), min(w.Min.V, d.highV)
+		d.add(Area{"window", Box{Point{d.plot.Min.X, d.y(top)}, Point{d.plot.Max.X, d.y(bottom)}}, windowShade})
+		d.drawLevel(windowPen, w.Max)
+		d.drawLevel(windowPen, w.Min)
 	}
 	for _, l := range d.Levels {
-		d.drawLevel(levelPen, l.V)
+		d.drawLevel(levelPen, l)
 	}
 	// The axes.
 	d.add(Path{"axis", hairPen, [][]Point{{{d.plot.Min.X, d.plot.Min.Y}, {d.plot.Min.X, d.plot.Max.Y}, {d.plot.Max.X, d.plot.Max.Y}}}})
@@ -201,8 +227,11 @@ func (d *chartDraft) drawWindows() {
 	}
 }
 
-func (d *chartDraft) drawLevel(pen Pen, v float64) {
-	line := d.across(v)
+func (d *chartDraft) drawLevel(pen Pen, l Level) {
+	if !slices.Contains(d.levels, l) {
+		return
+	}
+	line := d.across(l.V)
 	d.add(Path{"limit", pen, [][]Point{line}})
 	d.placer.addInk(line, hairCost)
 }
@@ -301,10 +330,7 @@ func (d *chartDraft) points(of []VoltagePoint) []Point {
 
 // limits returns the names of all horizontal limits, the highest first.
 func (d *chartDraft) limits() []Level {
-	all := append([]Level{d.Ceiling}, d.Levels...)
-	for _, w := range d.Windows {
-		all = append(all, w.Max, w.Min)
-	}
+	all := append([]Level{d.Ceiling}, d.levels...)
 	slices.SortStableFunc(all, func(a, b Level) int { return cmp.Compare(b.V, a.V) })
 	return all
 }
@@ -332,10 +358,15 @@ func (d *chartDraft) nameLimits() {
 	name := func(l Level, edges ...float64) {
 		var near []Point
 		for _, v := range edges {
+			if v > d.highV {
+				continue
+			}
 			y := d.y(v)
 			near = append(near, Point{d.plot.Max.X - 16, y}, Point{d.plot.Max.X - 32, y}, Point{d.plot.Min.X + 16, y}, Point{d.plot.Min.X + 32, y})
 		}
-		d.name(label{text: d.limitText(l), near: near, within: d.plot, leader: true})
+		if near != nil {
+			d.name(label{text: d.limitText(l), near: near, within: d.plot, leader: true})
+		}
 	}
 	name(d.Ceiling, d.Ceiling.V)
 	for _, w := range d.Windows {

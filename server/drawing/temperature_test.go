@@ -84,10 +84,10 @@ func randomChart(r *rand.Rand) *TemperatureChart {
 	mark(25, true)
 	for range r.IntN(3) {
 		low := between(0, 1500)
-		c.Windows = append(c.Windows, Window{Level{low, name()}, Level{low + between(0, 500), name()}, name()})
+		c.Windows = append(c.Windows, Window{Level{low, name()}, Level{low + between(0, 500)*[]float64{1, 1, 1e12}[r.IntN(3)], name()}, name()})
 	}
 	for range r.IntN(3) {
-		c.Levels = append(c.Levels, Level{between(0, 1500), name()})
+		c.Levels = append(c.Levels, Level{between(0, 1500) * []float64{1, 1, 1e9}[r.IntN(3)], name()})
 	}
 	for range r.IntN(9) {
 		line := VoltageLine{Kind: LineKind(r.IntN(2)), Text: name(), Short: name(), BetweenRows: r.IntN(4) == 0}
@@ -107,6 +107,30 @@ func randomChart(r *rand.Rand) *TemperatureChart {
 	return c
 }
 
+// strayPoint returns a point of a line, area or dot that lies outside the drawing.
+func strayPoint(d *Drawing) (Point, bool) {
+	page := Box{Max: Point{d.WidthMM, d.HeightMM}}.grown(1e-6)
+	var points []Point
+	for _, item := range d.Items {
+		switch item := item.(type) {
+		case Path:
+			for _, line := range item.Lines {
+				points = append(points, line...)
+			}
+		case Area:
+			points = append(points, item.Box.Min, item.Box.Max)
+		case Dot:
+			points = append(points, item.At)
+		}
+	}
+	for _, p := range points {
+		if !page.Contains(Box{p, p}) {
+			return p, true
+		}
+	}
+	return Point{}, false
+}
+
 // No two labels overlap and none leaves the drawing, whatever is drawn.
 func TestLabelsNeverOverlap(t *testing.T) {
 	n := 2500
@@ -119,6 +143,9 @@ func TestLabelsNeverOverlap(t *testing.T) {
 		for _, d := range []*Drawing{c.Wide(), c.Narrow()} {
 			if err := clash(d); err != nil {
 				t.Fatalf("chart %d, %g mm wide: %v", i, d.WidthMM, err)
+			}
+			if p, out := strayPoint(d); out {
+				t.Fatalf("chart %d, %g mm wide: a line goes to %v, outside the drawing", i, d.WidthMM, p)
 			}
 		}
 	}
