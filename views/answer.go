@@ -61,7 +61,7 @@ type CheckKind struct {
 // Check is one judged rule, or several equal ones of different subjects.
 type Check struct {
 	Number   string // "7.2", for reference: the second case of the seventh kind
-	Anchor   string // id of the element
+	Anchor   string // id of the element; the same for the same subject while the design is edited
 	Verdict  Verdict
 	About    string
 	Sentence string
@@ -71,6 +71,11 @@ type Check struct {
 	Cites    string
 	Turns    []string
 	Reasons  []string
+}
+
+// HasFacts reports whether there is anything to say beside the steps.
+func (c Check) HasFacts() bool {
+	return c.Shown != "" || c.Limit != "" || c.Cites != "" || len(c.Turns) > 0
 }
 
 // Step is one line of the working. The value carries its unit.

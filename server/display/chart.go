@@ -110,7 +110,7 @@ func (c *composer) frame(row *sizing.Limit, hotCell quantity.Exact) chart {
 	ch.view.STC = "STC, 25" + nbsp + "°C (77" + nbsp + "°F)"
 	ch.view.Hot = "Hottest cell, " + degrees(hotCell, quantity.Nearest)
 	level := func(name string, x quantity.Exact) drawing.Level {
-		ch.view.Levels = append(ch.view.Levels, views.ChartLevel{Name: capital(name), Value: statedIn(x, "V")})
+		ch.view.Levels = append(ch.view.Levels, views.ChartLevel{Name: name, Value: statedIn(x, "V")})
 		return drawing.Level{V: place(x), Text: name + " " + statedIn(x, "V")}
 	}
 	d.Ceiling = level("ceiling", row.VoltageCeilingV)

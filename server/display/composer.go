@@ -115,9 +115,12 @@ type told struct {
 func (c *composer) tell() []told {
 	var all []told
 	byText := map[string]int{}
+	ofKind := map[string]int{}
 	for i := range c.r.Checks {
 		k := &c.r.Checks[i]
 		t := c.tellCheck(k)
+		ofKind[k.ID]++
+		t.Anchor = "check-" + k.ID + "-" + strconv.Itoa(ofKind[k.ID])
 		key := t.textKey(k.ID)
 		if at, known := byText[key]; known {
 			all[at].abouts = append(all[at].abouts, k.About)
@@ -410,7 +413,6 @@ func byKind(all []told) []views.CheckKind {
 		}
 		k := &out[len(out)-1]
 		t.Number = strconv.Itoa(len(out)) + "." + strconv.Itoa(len(k.Checks)+1)
-		t.Anchor = "check-" + strconv.Itoa(len(out)) + "-" + strconv.Itoa(len(k.Checks)+1)
 		k.Checks = append(k.Checks, t.Check)
 	}
 	return out
