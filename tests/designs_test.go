@@ -328,7 +328,7 @@ func (d draw) inverter(id string) object {
 			"inputs":              d.whole(ifSound(d, 2, 1), 4),
 			"max_input_current_a": d.within(ifSound(d, 20., 10), 50, d.between(0, 1)),
 		}
-		d.maybe(t, 0.5, "full_power_min_v", func() any { return d.decimal(bottom+2+d.real(0, ifSound(d, 40., 150)), 0) })
+		d.maybe(t, 0.5, "full_power_min_v", func() any { return d.decimal(bottom+2+d.real(0, min(ifSound(d, 40., 150), top*0.85-bottom)), 0) })
 		d.maybe(t, 0.5, "full_power_max_v", func() any { return d.decimal(top*d.real(0.9, 0.99), 0) })
 		d.maybe(t, ifSound(d, 0.97, 0.7), "max_short_circuit_current_a", func() any { return d.within(ifSound(d, 25., 12), 80, d.between(0, 1)) })
 		d.maybe(t, 0.25, "max_input_current_per_input_a", func() any { return d.within(ifSound(d, 16., 8), 22, 1) })
@@ -505,7 +505,7 @@ func (d draw) sharpen(doc object) {
 	}
 	before, had := at(doc, pointer)
 	put(doc, pointer, json.Number(text))
-	if !obeysWindows(d.oracle(doc)) {
+	if t, _ := at(doc, strings.TrimSuffix(atTracker, "/")); !obeysWindow(t) {
 		put(doc, pointer, before)
 		if !had {
 			parent, _ := at(doc, pointer[:strings.LastIndexByte(pointer, '/')])
@@ -522,18 +522,15 @@ func pickAvailable(c *circuit, d draw) string {
 	return c.method()
 }
 
-// obeysWindows reports whether the trackers' windows still lie as the fault rules ask.
-func obeysWindows(o *oracleDesign) bool {
-	for _, i := range o.Inverters {
-		for _, t := range i.Trackers {
-			window := []*big.Rat{t.MPPTMin.Rat, t.FullPowerMin.Rat, t.FullPowerMax.Rat, t.MPPTMax.Rat}
-			window = slices.DeleteFunc(window, func(r *big.Rat) bool { return r == nil })
-			if !positive(window[0]) || !slices.IsSortedFunc(window, (*big.Rat).Cmp) {
-				return false
-			}
+// obeysWindow reports whether a tracker's windows lie as the fault rules ask.
+func obeysWindow(tracker any) bool {
+	var edges []*big.Rat
+	for _, name := range []string{"mppt_min_v", "full_power_min_v", "full_power_max_v", "mppt_max_v"} {
+		if edge, stated := tracker.(object)[name]; stated {
+			edges = append(edges, rat(string(edge.(json.Number))))
 		}
 	}
-	return true
+	return slices.IsSortedFunc(edges, (*big.Rat).Cmp)
 }
 
 // decimalText writes a rational in full, if it is a finite decimal of at most 36 places.

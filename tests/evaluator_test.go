@@ -50,7 +50,7 @@ func parseNumbers(line string) (*term, error) { return parseLine(line, false) }
 func parseExpression(line string) (*term, error) { return parseLine(line, true) }
 
 func parseLine(line string, symbols bool) (t *term, err error) {
-	p := parser{rest: line, symbols: symbols}
+	p := lineReader{rest: line, symbols: symbols}
 	defer func() {
 		if fault := recover(); fault != nil {
 			misread, ok := fault.(misprint)
@@ -67,8 +67,8 @@ func parseLine(line string, symbols bool) (t *term, err error) {
 	return t, nil
 }
 
-// parser holds what is left of a line.
-type parser struct {
+// lineReader holds what is left of a line.
+type lineReader struct {
 	rest    string
 	symbols bool
 }
@@ -76,10 +76,10 @@ type parser struct {
 // misprint is what stops the reading of a line.
 type misprint string
 
-func (p *parser) fail(why string) { panic(misprint(why)) }
+func (p *lineReader) fail(why string) { panic(misprint(why)) }
 
 // accept takes a sign if it stands next.
-func (p *parser) accept(sign string) bool {
+func (p *lineReader) accept(sign string) bool {
 	p.rest = strings.TrimLeft(p.rest, " ")
 	rest, ok := strings.CutPrefix(p.rest, sign)
 	if ok {
@@ -88,13 +88,13 @@ func (p *parser) accept(sign string) bool {
 	return ok
 }
 
-func (p *parser) expect(sign string) {
+func (p *lineReader) expect(sign string) {
 	if !p.accept(sign) {
 		p.fail("missing " + sign)
 	}
 }
 
-func (p *parser) sum() *term {
+func (p *lineReader) sum() *term {
 	negative := p.accept("−")
 	first := p.product()
 	if negative {
@@ -127,7 +127,7 @@ func negated(t *term) *term {
 	return &term{kind: aProduct, parts: []part{{false, &term{kind: aNumber, value: rat("-1")}}, {false, t}}}
 }
 
-func (p *parser) product() *term {
+func (p *lineReader) product() *term {
 	first := p.factor()
 	parts := []part{{false, first}}
 	for {
@@ -144,7 +144,7 @@ func (p *parser) product() *term {
 	}
 }
 
-func (p *parser) factor() *term {
+func (p *lineReader) factor() *term {
 	bracketed := func(kind kind, end string) *term {
 		args := []*term{p.sum()}
 		for len(args) < 2 && (kind == aMinimum || kind == aMaximum) {
@@ -173,7 +173,7 @@ func (p *parser) factor() *term {
 	return p.operand()
 }
 
-func (p *parser) operand() *term {
+func (p *lineReader) operand() *term {
 	p.rest = strings.TrimLeft(p.rest, " ")
 	text := p.rest[:len(p.rest)-len(strings.TrimLeft(p.rest, "0123456789."))]
 	if text == "" && p.symbols {

@@ -232,10 +232,7 @@ func TestLaw_OrderOfModulesNeverMatters(t *testing.T) {
 
 func TestLaw_FahrenheitAndCelsiusAgree(t *testing.T) {
 	holds(t, func(d draw, doc object) error {
-		var places []string
-		for _, p := range []string{"/site/coldest_c", "/site/hottest_c", "/allowances/headroom_c"} {
-			places = append(places, p)
-		}
+		places := []string{"/site/coldest_c", "/site/hottest_c", "/allowances/headroom_c"}
 		for i := range doc["planes"].(list) {
 			places = append(places, fmt.Sprintf("/planes/%d/hot_cell_rise_c", i))
 		}
