@@ -29,7 +29,7 @@ func (c *composer) charts(fittings []fitting) []views.Chart {
 	var all []chart
 	if len(c.d.Strings) == 0 {
 		for _, f := range fittings {
-			if _, _, ok := fewest(f.row); ok && f.row.MaxModules > 0 {
+			if _, _, ok := c.fewest(f.row); ok && f.row.MaxModules > 0 {
 				all = append(all, c.fittingChart(f))
 			}
 		}
@@ -301,7 +301,7 @@ func (c *composer) fittingChart(f fitting) chart {
 	if row.ReachedAtC != nil && !c.byTable() {
 		c.addMeeting(&ch, &voc, longest+" in series", *row.ReachedAtC, &row.VoltageCeilingV)
 	}
-	low, _, _ := fewest(row)
+	low, _, _ := c.fewest(row)
 	shortest := strconv.FormatInt(low, 10)
 	vmp := drawing.VoltageLine{Kind: drawing.Operating, Text: shortest + " in series, operating", Short: shortest + " operating"}
 	vmp.Points = points(

@@ -135,8 +135,11 @@ func (c *composer) fit(row *sizing.Limit) views.Fit {
 }
 
 // fewest returns the greater of the two minima, and whether the start sets it; ok is
-// false where no number of modules reaches the window.
-func fewest(row *sizing.Limit) (n int64, byStart, ok bool) {
+// false where no number of modules reaches the window or the start voltage.
+func (c *composer) fewest(row *sizing.Limit) (n int64, byStart, ok bool) {
+	if v := c.inverterByID(row.Inverter); v != nil && v.StartVoltageV != nil && row.MinModulesStart == nil {
+		return 0, true, false
+	}
 	if row.MinModules == nil {
 		return 0, false, false
 	}
@@ -149,7 +152,7 @@ func fewest(row *sizing.Limit) (n int64, byStart, ok bool) {
 
 // rangeOf tells how many modules in series and how many strings.
 func (c *composer) rangeOf(row *sizing.Limit) string {
-	low, _, ok := fewest(row)
+	low, _, ok := c.fewest(row)
 	switch {
 	case !ok || row.MaxModules == 0 || low > row.MaxModules:
 		return "no number of modules in series fits"
@@ -221,14 +224,14 @@ func (c *composer) reachedByMany(at quantity.Exact) string {
 
 // fewestSentence tells what sets the lower end of the range.
 func (c *composer) fewestSentence(row *sizing.Limit) string {
-	low, byStart, ok := fewest(row)
+	low, byStart, ok := c.fewest(row)
 	t, _ := c.trackerByID(row.Inverter, row.Tracker)
 	v := c.inverterByID(row.Inverter)
 	if t == nil || v == nil {
 		return ""
 	}
 	if !ok {
-		return "On the hottest roof a module's operating voltage is not above zero, so no string reaches the tracker's window."
+		return "On the hottest roof a module's voltage is not above zero, so no string reaches the tracker's window or starts the inverter."
 	}
 	short := "leave the tracker's window, " + statedIn(t.MPPTMinV, "V") + ", on the hottest roof"
 	if byStart && v.StartVoltageV != nil {
@@ -254,8 +257,6 @@ func (c *composer) stringsSentence(row *sizing.Limit) string {
 		return "A single string's short-circuit current is more than the tracker or one of its inputs withstands."
 	case row.MaxStringsFrom == "short-circuit" && t.MaxShortCircuitA != nil:
 		return "The tracker's short-circuit limit, " + statedIn(*t.MaxShortCircuitA, "A") + ", permits fewer strings than its " + counted(t.Inputs, "input", "inputs") + "."
-	case row.MaxStringsFrom == "inputs":
-		return ""
 	}
 	return ""
 }
