@@ -194,7 +194,7 @@ func (c *composer) ceilingSentence(row *sizing.Limit) string {
 	whose := ""
 	switch {
 	case len(names) == 1:
-		whose = " (the " + names[0] + "'s)"
+		whose = " (of the " + names[0] + ")"
 	case len(names) > 1:
 		whose = " (" + list(names) + " alike)"
 	}
