@@ -650,8 +650,9 @@ func (b *pageBuilder) waiting() views.Waiting {
 		if of == "" {
 			of = "Code"
 		}
-		name := labels[lastSegment(form.FieldOf(fault.Pointer))]
-		if strings.HasSuffix(fault.Pointer, "/unit") && form.Units(fault.Pointer) != nil {
+		at := form.FieldOf(fault.Pointer)
+		name := labels[lastSegment(at)]
+		if form.Units(at) != nil && strings.TrimSpace(b.form.Text(at+"/value")) != "" {
 			name = "the unit of " + name
 		}
 		if name == "" {

@@ -224,3 +224,25 @@ var (
 func Escape(name string) string { return escaper.Replace(name) }
 
 func unescape(segment string) string { return unescaper.Replace(segment) }
+
+// AllNames returns the names of all fields, with * for the number of an entry.
+func AllNames() []string {
+	var names []string
+	var walk func(n *node, at string)
+	walk = func(n *node, at string) {
+		if n.list {
+			at += "/*"
+		}
+		switch {
+		case n.kids == nil && n.kind.twoPart():
+			names = append(names, at+"/value", at+"/unit")
+		case n.kids == nil:
+			names = append(names, at)
+		}
+		for i := range n.kids {
+			walk(&n.kids[i], at+"/"+n.kids[i].name)
+		}
+	}
+	walk(&document, "")
+	return names
+}
