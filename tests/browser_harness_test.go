@@ -19,6 +19,7 @@ import (
 
 	"github.com/chromedp/cdproto/cdp"
 	"github.com/chromedp/cdproto/emulation"
+	"github.com/chromedp/cdproto/input"
 	"github.com/chromedp/cdproto/log"
 	"github.com/chromedp/cdproto/network"
 	"github.com/chromedp/cdproto/page"
@@ -258,6 +259,20 @@ func (b *tab) press(keys string) {
 	b.do(chromedp.KeyEvent(keys))
 }
 
+// enter presses the Enter key. Its events are sent one by one, as a window system
+// does: an element that acts on the first of them keeps the second from the element
+// to which it moves the focus.
+func (b *tab) enter() {
+	b.t.Helper()
+	for _, kind := range []input.DispatchKeyEventType{
+		input.DispatchKeyEventTypeRawKeyDown, input.DispatchKeyEventTypeChar, input.DispatchKeyEventTypeKeyUp,
+	} {
+		b.do(command(input.DispatchKeyEvent, input.DispatchKeyEventParams{
+			Type: kind, Key: "Enter", Code: "Enter", Text: "\r", WindowsVirtualKeyCode: 13, NativeVirtualKeyCode: 13,
+		}))
+	}
+}
+
 // wait waits until an expression in the page is true.
 func (b *tab) wait(expression string) {
 	b.t.Helper()
@@ -313,7 +328,7 @@ func (b *tab) barriers() []string {
 		b.do(command(emulation.SetScriptExecutionDisabled, emulation.SetScriptExecutionDisabledParams{Value: !b.script}))
 	}()
 	b.do(chromedp.Evaluate[chromedp.Void](axe))
-	return eval[[]string](b, `axe.run(document, {resultTypes: ["violations"]}).then(r => r.violations.map(v =>
+	return eval[[]string](b, `axe.run(document, {resultTypes: ["violations"], rules: {"target-size": {enabled: true}}}).then(r => r.violations.map(v =>
 		v.impact + ": " + v.help + " (" + v.id + ")" + v.nodes.map(n => "\n\t" + n.html.slice(0, 200) + "\n\t\t" + n.failureSummary).join("")))`)
 }
 
