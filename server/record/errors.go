@@ -14,6 +14,10 @@ var (
 	ErrInvalid     = errors.New("not valid")                      // the saved form of it would break a rule
 	ErrConflict    = errors.New("in conflict with what is saved") // such as a key used for another request
 	ErrUnavailable = errors.New("the database cannot be reached") // nothing was saved, or it is not known whether
+
+	// ErrUnknownOutcome comes with ErrUnavailable where the database went away in the
+	// instant of the save. Repeating it with the same request key is safe.
+	ErrUnknownOutcome = errors.New("it is not known whether it was saved; repeat with the same request key")
 )
 
 // StaleError tells that what an editor started from is no longer the newest: two
