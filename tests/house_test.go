@@ -63,11 +63,23 @@ func importTable() map[string]room {
 		}
 		below = append(below, tier...)
 	}
+	table["server/record"] = room{may: below, why: "what is saved, and who may do what, is decided without a database or a request at hand"}
+	below = append(below, "server/record")
 	table["server/form"] = room{may: below, why: "a form becomes a document of texts; the reader in sizing/design judges it"}
-	table["server/display"] = room{may: slices.Concat(below, []string{"views"}), why: "sentences are made of results, without a request at hand"}
-	table["server/drawing"] = room{may: below, why: "a drawing is made of numbers, without a request at hand"}
+	table["server/display"] = room{may: slices.Concat(below, []string{"views", "server/drawing"}), why: "sentences are made of results, without a request at hand"}
+	table["server/drawing"] = room{may: slices.Clone(below), why: "a drawing is made of numbers, without a request at hand"}
+	table["server/intake"] = room{may: below, why: "a file becomes records, or faults by row, without a request at hand"}
+	table["server/sheet"] = room{may: slices.Concat(below, []string{"server/display", "server/drawing"}), why: "one model of the sheet has many writers, none of which needs a request"}
+	table["server/access"] = room{may: []string{"server/record"}, why: "passwords and sessions know people and nothing of designs"}
+	table["server/store"] = room{
+		may:     slices.Concat(below, []string{"migrations"}),
+		outside: []string{"github.com/jackc/pgx/v5"},
+		why:     "the only room that knows the database, so that its errors and its words stop here",
+	}
+	table["server/localpg"] = room{outside: []string{"github.com/jackc/pgx/v5"}, why: "a private Postgres knows nothing of what is kept in it"}
 	table["server"] = room{
-		may:     slices.Concat(below, []string{"views", "static", "server/form", "server/display", "server/drawing"}),
+		may: slices.Concat(below, []string{"views", "static", "server/form", "server/display", "server/drawing", "server/intake",
+			"server/sheet", "server/access", "server/store"}),
 		outside: []string{"github.com/a-h/templ", "github.com/go-chi/chi/v5"},
 		why:     "the server knows requests and pages; it puts the other rooms together",
 	}
@@ -184,6 +196,9 @@ func TestHouse_ImportTable_CanFail(t *testing.T) {
 		{"server", "github.com/go-chi/chi", true},
 		{"server", "rimeline/cmd/rimeline", true},
 		{"static", "rimeline/views", true},
+		{"server", "github.com/jackc/pgx/v5", true},
+		{"server/store", "github.com/jackc/pgx/v5/pgxpool", false},
+		{"server/record", "rimeline/server/store", true},
 	} {
 		if got := judgeImport(c.name, table[c.name], c.used); (got != "") != c.refused {
 			t.Errorf("judgeImport(%s, %s) = %q, refused should be %t", c.name, c.used, got, c.refused)
