@@ -33,6 +33,7 @@ type ModuleTerms struct {
 	Cells, MaxSystemVoltage            *working.Term
 	MaxSeriesFuse, IscMarked, Bifacial *working.Term
 	Length, Width                      *working.Term
+	Suffix                             string // of the module\'s symbols, "" where there is only one module
 	pointer                            string
 }
 
@@ -77,6 +78,7 @@ type PlaneTerms struct {
 	Positions *working.Term
 	Rise      *working.Term // °C
 	Gain      *working.Term // %; nil: not stated
+	Suffix    string        // of the plane's symbols, "" where no line speaks of two planes
 }
 
 // StringTerms are the counts of a strings entry.
@@ -117,13 +119,14 @@ func NewTerms(d *Design) *Terms {
 		t.Headroom = working.Number(defaultRoomC)
 	}
 	for i := range d.Modules {
-		t.Modules[i] = moduleTerms(&d.Modules[i], "/modules/"+strconv.Itoa(i)+"/")
+		t.Modules[i] = moduleTerms(&d.Modules[i], "/modules/"+strconv.Itoa(i)+"/", numbered(",m", i, len(d.Modules) > 1))
 	}
 	for i := range d.Inverters {
 		t.Inverters[i] = inverterTerms(&d.Inverters[i], "/inverters/"+strconv.Itoa(i)+"/")
 	}
+	mixed := planesShareTracker(d)
 	for i := range d.Planes {
-		t.Planes[i] = planeTerms(&d.Planes[i], "/planes/"+strconv.Itoa(i)+"/")
+		t.Planes[i] = planeTerms(&d.Planes[i], "/planes/"+strconv.Itoa(i)+"/", numbered(",p", i, mixed))
 	}
 	for i := range d.OtherLimits {
 		o := &d.OtherLimits[i]
@@ -131,12 +134,40 @@ func NewTerms(d *Design) *Terms {
 	}
 	for i := range d.Strings {
 		s, at := &d.Strings[i], "/strings/"+strconv.Itoa(i)+"/"
+		suffix := numbered("", i, len(d.Strings) > 1)
 		t.Strings[i] = StringTerms{
-			Series:   count("n", at+"modules_in_series", s.ModulesInSeries),
-			Parallel: count("s", at+"strings_in_parallel", s.StringsInParallel),
+			Series:   count("n"+suffix, at+"modules_in_series", s.ModulesInSeries),
+			Parallel: count("s"+suffix, at+"strings_in_parallel", s.StringsInParallel),
 		}
 	}
 	return t
+}
+
+// numbered returns the end of a symbol that tells one of several apart, counted
+// from 1; nothing where there is only one.
+func numbered(mark string, i int, several bool) string {
+	if !several {
+		return ""
+	}
+	return mark + strconv.Itoa(i+1)
+}
+
+// planesShareTracker reports whether a tracker carries strings of several planes,
+// so that one line of work may speak of two.
+func planesShareTracker(d *Design) bool {
+	type tracker struct {
+		inverter, tracker string
+		unit              int64
+	}
+	plane := map[tracker]string{}
+	for _, s := range d.Strings {
+		k := tracker{s.Inverter, s.Tracker, s.Unit}
+		if p, ok := plane[k]; ok && p != s.Plane {
+			return true
+		}
+		plane[k] = s.Plane
+	}
+	return false
 }
 
 func bounded(symbol, unit, pointer string, now quantity.Exact, low, high *quantity.Exact) *working.Term {
@@ -178,32 +209,33 @@ func toFahrenheit(c quantity.Exact) quantity.Exact {
 	return c.Mul(quantity.Ratio(9, 5)).Add(quantity.Int(32))
 }
 
-func moduleTerms(m *Module, at string) ModuleTerms {
+func moduleTerms(m *Module, at, suffix string) ModuleTerms {
 	vocLow, vocHigh := vocBounds(m)
 	t := ModuleTerms{
-		Pmax:             positive("Pmax", "W", at+"pmax_w", m.PmaxW),
-		Voc:              bounded("Voc", "V", at+"voc_v", m.VocV, vocLow, vocHigh),
-		Isc:              bounded("Isc", "A", at+"isc_a", m.IscA, &m.ImpA, nil),
-		Vmp:              bounded("Vmp", "V", at+"vmp_v", m.VmpV, &zero, &m.VocV),
-		Imp:              bounded("Imp", "A", at+"imp_a", m.ImpA, &zero, &m.IscA),
-		MaxSystemVoltage: positive("Vmodule,max", "V", at+"max_system_voltage_v", m.MaxSystemVoltageV),
-		MaxSeriesFuse:    stated("Ifuse,module", "A", at+"max_series_fuse_a", m.MaxSeriesFuseA, &zero, nil),
-		IscMarked:        stated("Isc,marked", "A", at+"isc_marked_max_a", m.IscMarkedMaxA, &zero, nil),
-		Bifacial:         stated("φ", "", at+"bifaciality", m.Bifaciality, nil, nil),
-		Length:           stated("length", "mm", at+"length_mm", m.LengthMM, &zero, nil),
-		Width:            stated("width", "mm", at+"width_mm", m.WidthMM, &zero, nil),
+		Pmax:             positive("Pmax"+suffix, "W", at+"pmax_w", m.PmaxW),
+		Voc:              bounded("Voc"+suffix, "V", at+"voc_v", m.VocV, vocLow, vocHigh),
+		Isc:              bounded("Isc"+suffix, "A", at+"isc_a", m.IscA, &m.ImpA, nil),
+		Vmp:              bounded("Vmp"+suffix, "V", at+"vmp_v", m.VmpV, &zero, &m.VocV),
+		Imp:              bounded("Imp"+suffix, "A", at+"imp_a", m.ImpA, &zero, &m.IscA),
+		MaxSystemVoltage: positive("Vmodule,max"+suffix, "V", at+"max_system_voltage_v", m.MaxSystemVoltageV),
+		MaxSeriesFuse:    stated("Ifuse,module"+suffix, "A", at+"max_series_fuse_a", m.MaxSeriesFuseA, &zero, nil),
+		IscMarked:        stated("Isc,marked"+suffix, "A", at+"isc_marked_max_a", m.IscMarkedMaxA, &zero, nil),
+		Bifacial:         stated("φ"+suffix, "", at+"bifaciality", m.Bifaciality, nil, nil),
+		Length:           stated("length"+suffix, "mm", at+"length_mm", m.LengthMM, &zero, nil),
+		Width:            stated("width"+suffix, "mm", at+"width_mm", m.WidthMM, &zero, nil),
+		Suffix:           suffix,
 		pointer:          at,
 	}
 	low, high := voltageCoefficientBounds(m.VocCoeff.Unit, m.VocV)
-	t.VocCoeff = coefficientTerm("βVoc", at+"voc_temp_coeff", &m.VocCoeff, low, high)
+	t.VocCoeff = coefficientTerm("βVoc"+suffix, at+"voc_temp_coeff", &m.VocCoeff, low, high)
 	if m.VmpCoeff != nil {
 		low, high = voltageCoefficientBounds(m.VmpCoeff.Unit, m.VmpV)
-		t.VmpCoeff = coefficientTerm("βVmp", at+"vmp_temp_coeff", m.VmpCoeff, low, high)
+		t.VmpCoeff = coefficientTerm("βVmp"+suffix, at+"vmp_temp_coeff", m.VmpCoeff, low, high)
 	}
-	t.PmaxCoeff = coefficientTerm("γPmax", at+"pmax_temp_coeff", m.PmaxCoeff, nil, &zero)
-	t.IscCoeff = coefficientTerm("αIsc", at+"isc_temp_coeff", m.IscCoeff, nil, nil)
+	t.PmaxCoeff = coefficientTerm("γPmax"+suffix, at+"pmax_temp_coeff", m.PmaxCoeff, nil, &zero)
+	t.IscCoeff = coefficientTerm("αIsc"+suffix, at+"isc_temp_coeff", m.IscCoeff, nil, nil)
 	if m.CellsInSeries != nil {
-		t.Cells = count("Ncells", at+"cells_in_series", *m.CellsInSeries)
+		t.Cells = count("Ncells"+suffix, at+"cells_in_series", *m.CellsInSeries)
 	}
 	return t
 }
@@ -304,11 +336,12 @@ func fullMaxAbove(k *Tracker) *quantity.Exact {
 	return &k.MPPTMinV
 }
 
-func planeTerms(p *Plane, at string) PlaneTerms {
+func planeTerms(p *Plane, at, suffix string) PlaneTerms {
 	t := PlaneTerms{
 		Positions: working.Of("positions", "", &working.Input{Pointer: at + "positions", Now: quantity.Int(p.Positions), Whole: true}),
-		Gain:      stated("gain", "%", at+"current_gain_pct", p.CurrentGainPct, &zero, nil),
+		Gain:      stated("gain"+suffix, "%", at+"current_gain_pct", p.CurrentGainPct, &zero, nil),
 	}
+	t.Suffix = suffix
 	t.Rise = differenceTerm("rise", at+"hot_cell_rise_c", p.HotCellRise)
 	return t
 }

@@ -23,7 +23,7 @@ func (a *Array) backFeed(e *entry, t *Tracker) working.Check {
 	}
 	limit := v.terms.MaxSeriesFuse
 	least := working.Named("Ifuse,min", "A", working.Number(a.Book.FuseFactor.Value).Times(v.isc))
-	check.Steps = shownOnce(append([]*working.Term{named(v.isc), least}, steps...), "Imp,gain", sum)
+	check.Steps = shownOnce(append(append([]*working.Term{v.isc, least}, steps...), sum)...)
 
 	var rules []working.Rule
 	if limit == nil {
@@ -61,7 +61,7 @@ func (a *Array) backFeedSum(e *entry, t *Tracker) (*working.Term, []*working.Ter
 	}
 	for _, other := range t.entries {
 		v := &a.planes[other.plane]
-		steps = append(steps, named(v.isc))
+		steps = append(steps, v.isc)
 		strings := other.terms.Parallel
 		if other == e {
 			strings = strings.Minus(working.Whole(1))

@@ -63,14 +63,14 @@ func (a *Array) about(t *Tracker) working.About {
 	return working.About{String: -1, Inverter: v.ID, Unit: t.unit, Tracker: v.Trackers[t.tracker].ID}
 }
 
-// sum adds one current of every string on the tracker: a line for each entry, then
-// their sum.
-func (a *Array) sum(t *Tracker, symbol, total string, each func(*plane) *working.Term) (*working.Term, []*working.Term) {
+// sum adds one current of every string on the tracker: a line for the module's
+// current on each plane, one for each entry, then their sum.
+func (a *Array) sum(t *Tracker, symbol, total string, module, each func(*plane) *working.Term) (*working.Term, []*working.Term) {
 	var steps []*working.Term
 	var all *working.Term
 	for _, e := range t.entries {
 		v := &a.planes[e.plane]
-		steps = append(steps, named(v.isc), named(v.imp))
+		steps = append(steps, module(v))
 		current := each(v).Times(e.terms.Parallel)
 		if len(t.entries) > 1 {
 			current = working.Named(symbol+strconv.Itoa(e.index+1), "A", current)
@@ -85,19 +85,15 @@ func (a *Array) sum(t *Tracker, symbol, total string, each func(*plane) *working
 	return working.Named(total, "A", all), steps
 }
 
-// named returns t if it has a step, else nil.
-func named(t *working.Term) *working.Term {
-	if t.IsNamed() {
-		return t
-	}
-	return nil
-}
+func shortCircuitOf(v *plane) *working.Term { return v.isc }
+
+func operatingOf(v *plane) *working.Term { return v.imp }
 
 // operatingCurrent judges that the strings' operating current does not exceed what
 // the tracker can use; above it the inverter clips.
 func (a *Array) operatingCurrent(t *Tracker) working.Check {
 	k := &a.terms.Inverters[t.inverter].Trackers[t.tracker]
-	total, steps := a.sum(t, "Imp", "ΣImp", func(v *plane) *working.Term { return v.imp })
+	total, steps := a.sum(t, "Imp", "ΣImp", operatingOf, operatingOf)
 	rules := []working.Rule{rule(working.Caution, "", working.Exceeds(total, k.MaxInput))}
 	if k.MaxInputPerInput != nil {
 		for _, e := range t.entries {
@@ -107,15 +103,15 @@ func (a *Array) operatingCurrent(t *Tracker) working.Check {
 	return judged(working.Check{
 		ID: "operating-current", About: a.about(t), Value: valueOf(total), Limit: valueOf(k.MaxInput), Unit: "A",
 		Cites: []string{a.Book.Instructions.Cite},
-		Steps: shownOnce(steps, "Isc,gain", total),
+		Steps: shownOnce(append(steps, total)...),
 	}, a.trackerDoubts(rules, t, "operating-current"))
 }
 
-// shownOnce returns the steps of the terms and of the last, leaving out repeats and one symbol that does not belong.
-func shownOnce(terms []*working.Term, without string, last *working.Term) []working.Step {
+// shownOnce returns the steps of the terms, leaving out repeats.
+func shownOnce(terms ...*working.Term) []working.Step {
 	var steps []working.Step
-	for _, s := range shown(append(terms, last)...) {
-		if s.Symbol != without && !containsStep(steps, s) {
+	for _, s := range shown(terms...) {
+		if !containsStep(steps, s) {
 			steps = append(steps, s)
 		}
 	}
@@ -157,11 +153,11 @@ func containsInt(list []int, n int) bool {
 // stated limit for one input can still break the check.
 func (a *Array) shortCircuit(t *Tracker) working.Check {
 	k := &a.terms.Inverters[t.inverter].Trackers[t.tracker]
-	total, steps := a.sum(t, "Isc", "ΣIsc", a.shortCircuitEach)
+	total, steps := a.sum(t, "Isc", "ΣIsc", shortCircuitOf, a.shortCircuitEach)
 	check := working.Check{
 		ID: "short-circuit", About: a.about(t), Value: valueOf(total), Unit: "A",
 		Cites: []string{a.Book.CurrentFactor.Clause.Cite, a.Book.Instructions.Cite},
-		Steps: shownOnce(steps, "Imp,gain", total),
+		Steps: shownOnce(append(steps, total)...),
 	}
 	var rules []working.Rule
 	if k.MaxShortCircuit == nil {
@@ -170,9 +166,9 @@ func (a *Array) shortCircuit(t *Tracker) working.Check {
 		check.Limit = valueOf(k.MaxShortCircuit)
 		rules = append(rules, rule(working.Outside, "", working.Exceeds(total, k.MaxShortCircuit)))
 		if a.ratedBasis() {
-			maximum, more := a.sum(t, "Imax", "ΣImax", a.maximumEach)
+			maximum, more := a.sum(t, "Imax", "ΣImax", shortCircuitOf, a.maximumEach)
 			rules = append(rules, rule(working.Caution, "rated-basis", working.Exceeds(maximum, k.MaxShortCircuit)))
-			check.Steps = shownOnce(append(append(more, maximum), steps...), "Imp,gain", total)
+			check.Steps = shownOnce(append(append(append(more, maximum), steps...), total)...)
 		}
 	}
 	if k.MaxShortCircuitPerInput != nil {

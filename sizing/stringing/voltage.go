@@ -75,12 +75,12 @@ func (a *Array) setCold(v *plane) {
 	v.fallsC = v.terms.VocCoeff.PerC(v.terms.Voc)
 	colder := a.terms.Coldest.Minus(a.terms.Headroom)
 	v.colderVoc = times(moved(v.terms.Voc, v.terms.VocCoeff, at25(colder)), a.coldAllowance())
-	byCoefficient, coefficientSteps := a.allowed("Voc,cold", "Voc,Tcold", a.coldByCoefficient(v, a.terms.Coldest))
+	byCoefficient, coefficientSteps := a.allowed("Voc,cold"+v.terms.Suffix, "Voc,Tcold"+v.terms.Suffix, a.coldByCoefficient(v, a.terms.Coldest))
 	var byTable *working.Term
 	var tableSteps []*working.Term
 	if row, ok := a.Book.ColdFactorAt(a.terms.Coldest.Value()); ok && v.datasheet.CrystallineSilicon() {
 		v.row = &row
-		byTable, tableSteps = a.allowed("Voc,cold", "Voc,Tcold", v.coldByRow(row))
+		byTable, tableSteps = a.allowed("Voc,cold"+v.terms.Suffix, "Voc,Tcold"+v.terms.Suffix, v.coldByRow(row))
 	}
 	coefficientSteps = append([]*working.Term{a.terms.Coldest}, coefficientSteps...)
 	tableSteps = append([]*working.Term{a.terms.Coldest}, tableSteps...)
@@ -273,13 +273,14 @@ func (a *Array) hotSteps(v *plane) []*working.Term {
 // gain, and for Isc the highest value marked on the module if that is greater.
 func (a *Array) setCurrents(v *plane) {
 	v.isc, v.imp = v.terms.Isc, v.terms.Imp
+	suffix := a.terms.Planes[v.index].Suffix
 	if gain := a.terms.Planes[v.index].Gain; gain != nil {
 		factor := working.Whole(1).Plus(gain.Over(working.Whole(100)))
-		v.isc = working.Named("Isc,gain", "A", v.isc.Times(factor))
-		v.imp = working.Named("Imp,gain", "A", v.imp.Times(factor))
+		v.isc = working.Named("Isc,gain"+suffix, "A", v.isc.Times(factor))
+		v.imp = working.Named("Imp,gain"+suffix, "A", v.imp.Times(factor))
 	}
 	if marked := v.terms.IscMarked; marked != nil {
-		v.isc = working.Named("Isc,gain", "A", working.MaxOf(unnamed(v.isc), marked))
+		v.isc = working.Named("Isc,gain"+suffix, "A", working.MaxOf(unnamed(v.isc), marked))
 	}
 }
 
