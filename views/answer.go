@@ -66,16 +66,18 @@ type Check struct {
 	About    string
 	Sentence string
 	Steps    []Step
-	Shown    string // how the value was rounded for the sentence, "" if it was not
-	Limit    string // the limit and where it comes from, "" where there is none
-	Cites    string
-	Turns    []string
-	Reasons  []string
+	// WorkingOf is the subject whose working stands for all, "" if that needs no saying.
+	WorkingOf string
+	Shown     string // how the value was rounded for the sentence, "" if it was not
+	Limit     string // the limit and where it comes from, "" where there is none
+	Cites     string
+	Turns     []string
+	Reasons   []string
 }
 
 // HasFacts reports whether there is anything to say beside the steps.
 func (c Check) HasFacts() bool {
-	return c.Shown != "" || c.Limit != "" || c.Cites != "" || len(c.Turns) > 0
+	return c.WorkingOf != "" || c.Shown != "" || c.Limit != "" || c.Cites != "" || len(c.Turns) > 0
 }
 
 // Step is one line of the working. The value carries its unit.

@@ -130,7 +130,19 @@ func (c *composer) tell() []told {
 		all = append(all, t)
 	}
 	for i := range all {
-		all[i].About = c.about(all[i].abouts)
+		t := &all[i]
+		t.About = c.about(t.abouts)
+		if len(t.abouts) == 1 || len(t.Steps) == 0 {
+			continue
+		}
+		// The numbers of the entries in the working are those of the first subject.
+		if c.subject(t.abouts[0]).entry == "" {
+			t.WorkingOf = c.about(t.abouts[:1])
+			continue
+		}
+		for j := range t.Steps {
+			t.Steps[j].Expression = unnumbered(t.Steps[j].Expression)
+		}
 	}
 	return all
 }
@@ -150,7 +162,7 @@ func (t *told) textKey(id string) string {
 		b.WriteByte(1)
 	}
 	for _, s := range t.Steps {
-		b.WriteString(numberless(s.Symbol) + "\x00" + s.WithNumbers + "\x00" + s.Value + "\x00")
+		b.WriteString(withoutNumber(s.Symbol) + "\x00" + s.WithNumbers + "\x00" + s.Value + "\x00")
 	}
 	return b.String()
 }

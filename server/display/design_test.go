@@ -133,6 +133,10 @@ var variants = map[string][]change{
 	"hot cells":  {{"/planes/0/hot_cell_rise_c", 300}},
 	"per input":  {{"/inverters/0/trackers/1/max_short_circuit_current_per_input_a", 10}},
 	"late start": {{"/inverters/0/start_voltage_v", 390}},
+	"two modules": {
+		{"/modules/-", map[string]any{"id": "m2", "technology": "multi-si", "pmax_w": 300, "voc_v": 40, "isc_a": 9.6, "vmp_v": 33, "imp_a": 9.1,
+			"voc_temp_coeff": map[string]any{"value": -0.3, "unit": "%/°C"}, "max_system_voltage_v": 1000, "max_series_fuse_a": 20}},
+		{"/planes/1/module", "m2"}, {"/strings/-", entry("t1", "west", 11, 1)}, {"/planes/1/current_gain_pct", 5}},
 }
 
 func eachVariant(t *testing.T, test func(t *testing.T, c *composer)) {

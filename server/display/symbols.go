@@ -55,11 +55,10 @@ var symbols = []views.Symbol{
 	{Symbol: "Vmppt,min", Meaning: "lower limit of the tracker's window, V"},
 	{Symbol: "Vmppt,max", Meaning: "upper limit of the tracker's window, V"},
 	{Symbol: "Vstart", Meaning: "voltage at which the inverter starts, V"},
-	{Symbol: "n", Meaning: "modules in series"},
+	{Symbol: "n, n#", Meaning: "modules in series; of strings entry S#"},
 	{Symbol: "nmax", Meaning: "the most modules whose cold voltage does not exceed the ceiling"},
 	{Symbol: "nmin", Meaning: "the fewest modules whose hot voltage reaches the window"},
-	{Symbol: "s", Meaning: "strings in parallel"},
-	{Symbol: "s#", Meaning: "strings in parallel of strings entry S#"},
+	{Symbol: "s, s#", Meaning: "strings in parallel; of strings entry S#"},
 	{Symbol: "Σs", Meaning: "strings on the tracker"},
 	{Symbol: "inputs", Meaning: "strings that can be landed on the tracker"},
 	{Symbol: "gain", Meaning: "gain of current on the plane, %"},
@@ -81,16 +80,24 @@ var symbols = []views.Symbol{
 	{Symbol: "left over", Meaning: "places that stay empty"},
 	{Symbol: "P#", Meaning: "power at STC of the modules of strings entry S#, W"},
 	{Symbol: "ΣP", Meaning: "power at STC of all modules on the inverter, W"},
+	{Symbol: ofModule, Meaning: "of the design's module number #"},
+	{Symbol: ofPlane, Meaning: "of the design's plane number #"},
 }
+
+// Ends of symbols that tell modules and planes apart where a design has several.
+const (
+	ofModule = "…,m#"
+	ofPlane  = "…,p#"
+)
 
 // symbolsIn explains the symbols that occur in steps.
 func symbolsIn(all ...[]working.Step) []views.Symbol {
 	used := map[string]bool{}
 	for _, steps := range all {
 		for _, s := range steps {
-			used[numberless(s.Symbol)] = true
+			mark(used, s.Symbol)
 			for word := range strings.SplitSeq(s.Expression, " ") {
-				used[numberless(bare(word))] = true
+				mark(used, bare(word))
 			}
 		}
 	}
@@ -101,6 +108,12 @@ func symbolsIn(all ...[]working.Step) []views.Symbol {
 		}
 	}
 	return found
+}
+
+func mark(used map[string]bool, symbol string) {
+	for _, s := range explanations(symbol) {
+		used[s] = true
+	}
 }
 
 // bare returns a word of an expression without the brackets and commas around it.
@@ -120,14 +133,39 @@ func bare(word string) string {
 	}
 }
 
-// numberless writes the number of a strings entry or other part as "#", where the
-// symbol is explained so: Imp2 is Imp#.
-func numberless(symbol string) string {
-	cut := strings.TrimRightFunc(symbol, unicode.IsDigit)
-	if cut != symbol && explains(cut+"#") {
-		return cut + "#"
+// explanations returns under which symbols of the list a symbol is explained: Imp2
+// under Imp#, Voc,m2 under Voc and …,m#.
+func explanations(symbol string) []string {
+	var under []string
+	for _, end := range []string{ofModule, ofPlane} {
+		mark := strings.TrimSuffix(strings.TrimPrefix(end, "…"), "#")
+		if cut := withoutNumber(symbol); cut != symbol && strings.HasSuffix(cut, mark) {
+			under = append(under, end)
+			symbol = strings.TrimSuffix(cut, mark)
+		}
 	}
-	return symbol
+	cut := withoutNumber(symbol)
+	for _, listed := range []string{symbol, cut + "#", cut + ", " + cut + "#"} {
+		if explains(listed) {
+			return append(under, listed)
+		}
+	}
+	return nil
+}
+
+func withoutNumber(symbol string) string { return strings.TrimRightFunc(symbol, unicode.IsDigit) }
+
+// unnumbered writes a formula without the numbers of strings entries: n for n2. It
+// is used where the subject names the entry.
+func unnumbered(formula string) string {
+	words := strings.Split(formula, " ")
+	for i, word := range words {
+		symbol := bare(word)
+		if cut := withoutNumber(symbol); cut == "n" || cut == "s" {
+			words[i] = strings.Replace(word, symbol, cut, 1)
+		}
+	}
+	return strings.Join(words, " ")
 }
 
 func explains(symbol string) bool {
