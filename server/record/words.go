@@ -57,9 +57,9 @@ func letters(run string) (kept []rune, starts []int) {
 			apart = true
 			continue
 		}
-		digit := unicode.IsDigit(r)
-		// A mark, such as an accent of its own, belongs to the letter before it.
-		if apart || len(kept) > 0 && digit != digits && !unicode.IsMark(r) {
+		// A mark, such as an accent of its own, belongs to what stands before it.
+		digit := unicode.IsDigit(r) || unicode.IsMark(r) && digits
+		if apart || digit != digits {
 			starts = append(starts, len(kept))
 		}
 		apart, digits = false, digit
