@@ -291,7 +291,7 @@ func (b *pageBuilder) margins() views.Section {
 func (b *pageBuilder) otherLimit(k int, at string) views.Group {
 	name := fmt.Sprintf("Rated part %d", k+1)
 	return views.Group{
-		Label: name, Class: "entry", Fields: b.fields(at, otherLimitInquiries),
+		Heading: name, Class: "entry", Fields: b.fields(at, otherLimitInquiries),
 		Buttons: []views.Button{{Do: "remove " + at, Words: "Remove", Spoken: name}},
 	}
 }

@@ -28,7 +28,7 @@ func (f *Form) Add(list string) string {
 		f.texts[at+"/quantity"] = "1"
 		f.Add(at + "/trackers")
 	case "planes":
-		f.texts[at+"/id"] = f.freeID(list, "Plane ")
+		f.texts[at+"/id"] = f.planeName()
 		f.texts[at+"/hot_cell_rise_c/unit"] = "°C"
 		if f.lens["/modules"] == 1 {
 			f.texts[at+"/module"] = f.texts["/modules/0/id"]
@@ -37,6 +37,20 @@ func (f *Form) Add(list string) string {
 		f.wire(at)
 	}
 	return at
+}
+
+// planeName returns a name for the plane that was added last: by its place, or a
+// later one where that is taken.
+func (f *Form) planeName() string {
+	taken := map[string]bool{}
+	for k := range f.lens["/planes"] {
+		taken[strings.TrimSpace(f.texts[entry("/planes", k)+"/id"])] = true
+	}
+	for n := f.lens["/planes"]; ; n++ {
+		if name := "Plane " + strconv.Itoa(n); !taken[name] {
+			return name
+		}
+	}
 }
 
 // wire fills in a new strings entry: the first tracker and the first plane that

@@ -398,9 +398,9 @@ func TestAdd(t *testing.T) {
 		{"/modules", "/modules/1", map[string]string{"id": "m2"}},
 		{"/inverters", "/inverters/1", map[string]string{"id": "i2", "quantity": "1", "trackers/0/id": "t1"}},
 		{"/inverters/0/trackers", "/inverters/0/trackers/2", map[string]string{"id": "t3"}},
-		{"/planes", "/planes/2", map[string]string{"id": "Plane 1", "module": "", "hot_cell_rise_c/unit": "°C"}}, // two modules by now
-		{"/strings", "/strings/2", map[string]string{"plane": "Plane 1", "inverter": "i1", "tracker": "t3", "unit": "1", "strings_in_parallel": "1", "modules_in_series": ""}},
-		{"/strings", "/strings/3", map[string]string{"plane": "Plane 1", "inverter": "i2", "tracker": "t1"}},
+		{"/planes", "/planes/2", map[string]string{"id": "Plane 3", "module": "", "hot_cell_rise_c/unit": "°C"}}, // two modules by now
+		{"/strings", "/strings/2", map[string]string{"plane": "Plane 3", "inverter": "i1", "tracker": "t3", "unit": "1", "strings_in_parallel": "1", "modules_in_series": ""}},
+		{"/strings", "/strings/3", map[string]string{"plane": "Plane 3", "inverter": "i2", "tracker": "t1"}},
 		{"/other_limits", "/other_limits/1", nil},
 	} {
 		if at := f.Add(tc.list); at != tc.at {
