@@ -150,6 +150,8 @@ func (w *writer) strung(s *StringResult) {
 	w.count("modules_in_series", s.ModulesInSeries)
 	w.count("strings_in_parallel", s.StringsInParallel)
 	w.number("voc_cold_v", s.VocColdV)
+	w.number("voc_stc_v", s.VocSTCV)
+	w.number("voc_hot_v", s.VocHotV)
 	w.number("vmp_stc_v", s.VmpSTCV)
 	w.number("vmp_hot_v", s.VmpHotV)
 	w.number("max_current_a", s.MaxCurrentA)

@@ -34,6 +34,7 @@ type StringResult struct {
 	StringsInParallel int64
 
 	VocColdV, VmpSTCV, VmpHotV quantity.Exact
+	VocSTCV, VocHotV           quantity.Exact  // for reading a meter and for the chart; judged only against a start voltage
 	MaxCurrentA                quantity.Exact  // Isc with gain × 1.25 × strings in parallel
 	Verdict                    working.Verdict // the worst about the entry, its tracker, its plane and its inverter unit
 }

@@ -79,11 +79,11 @@ func limits(a *stringing.Array) []Limit {
 func strungRows(a *stringing.Array) []StringResult {
 	rows := make([]StringResult, len(a.Design.Strings))
 	for i, s := range a.Design.Strings {
-		cold, stc, hot := a.Voltages(i)
+		v := a.Voltages(i)
 		rows[i] = StringResult{
 			Inverter: s.Inverter, Unit: s.Unit, Tracker: s.Tracker, Plane: s.Plane,
 			ModulesInSeries: s.ModulesInSeries, StringsInParallel: s.StringsInParallel,
-			VocColdV: cold.Value(), VmpSTCV: stc.Value(), VmpHotV: hot.Value(), MaxCurrentA: a.MaxCurrent(i),
+			VocColdV: v.VocCold, VocSTCV: v.VocSTC, VocHotV: v.VocHot, VmpSTCV: v.VmpSTC, VmpHotV: v.VmpHot, MaxCurrentA: a.MaxCurrent(i),
 		}
 	}
 	return rows

@@ -204,18 +204,17 @@ func (c *composer) addString(ch *chart, entries []int, several bool) {
 		what += " (" + list(planes) + ")"
 		short += " " + list(planes)
 	}
-	m := c.d.Module(c.planeOfString(entries[0]).Module)
 	cold, hot := c.d.Site.Coldest.Celsius(), c.cellHot(entries[0])
 	ceiling := c.checkOf("voltage-ceiling", entries[0])
 
 	voc := drawing.VoltageLine{Kind: drawing.OpenCircuit, Text: what + ", open circuit", Short: short + " open circuit", BetweenRows: c.byTable()}
 	voc.Points = points(
 		drawing.VoltagePoint{AtC: place(cold), V: place(s.VocColdV), Text: stringVolts(s.VocColdV, quantity.Up)},
-		drawing.VoltagePoint{AtC: stcC, V: float64(s.ModulesInSeries) * place(m.VocV)})
-	vocView := views.ChartLine{Name: capital(what) + ", open circuit", Cold: stringVolts(s.VocColdV, quantity.Up)}
-	if start := c.checkOf("start", entries[0]); start != nil && start.Value != nil {
-		voc.Points = points(append(voc.Points, drawing.VoltagePoint{AtC: place(hot), V: place(*start.Value)})...)
-		vocView.Hot = stringVolts(*start.Value, quantity.Down)
+		drawing.VoltagePoint{AtC: stcC, V: place(s.VocSTCV)},
+		drawing.VoltagePoint{AtC: place(hot), V: place(s.VocHotV)})
+	vocView := views.ChartLine{
+		Name: capital(what) + ", open circuit", Cold: stringVolts(s.VocColdV, quantity.Up),
+		STC: stringVolts(s.VocSTCV, quantity.Nearest), Hot: stringVolts(s.VocHotV, quantity.Down),
 	}
 	if ceiling != nil && ceiling.ReachedAtC != nil && !c.byTable() {
 		c.addMeeting(ch, &voc, what, *ceiling.ReachedAtC, ceiling.Limit)

@@ -11,7 +11,7 @@ import (
 type CeilingEntry struct {
 	From    string // "inverter", "module", "structure" or the other limit's name
 	MaxV    quantity.Exact
-	Source  string // clause, "datasheet", or what the document says
+	Source  string // clause, what the document says, or "as entered"
 	Pointer string // where the document states it, "" for a code's
 	Governs bool   // it is the lowest, or one of the lowest at a tie
 
@@ -61,14 +61,14 @@ func (a *Array) newCeiling(v *plane, inverter int) ([]CeilingEntry, *working.Ter
 	return entries, working.Named("Vceiling", "V", lowest)
 }
 
-// sourceOf returns where the document says that a value came from, "datasheet" where it does not.
+// sourceOf returns where the document says that a value came from, "as entered" where it does not.
 func (a *Array) sourceOf(pointer string) string {
 	for _, s := range a.Design.Sources {
 		if s.Pointer == pointer {
 			return s.From
 		}
 	}
-	return "datasheet"
+	return "as entered"
 }
 
 // coldestReported is the temperature below which no meeting point is reported:

@@ -1,6 +1,9 @@
 package stringing
 
-import "rimeline/sizing/working"
+import (
+	"rimeline/sizing/quantity"
+	"rimeline/sizing/working"
+)
 
 // StringChecks judges one strings entry, by its index in the design.
 func (a *Array) StringChecks(i int, tracker *Tracker) []working.Check {
@@ -42,12 +45,19 @@ func indexes(entries []*entry) []int {
 	return list
 }
 
-// Voltages are a strings entry's voltages in V: open circuit on the coldest
-// morning, operating at STC, operating on the hottest roof.
-func (a *Array) Voltages(i int) (vocCold, vmpSTC, vmpHot *working.Term) {
+// Voltages are a strings entry's voltages in V: open circuit and operating, on the
+// coldest morning by the chosen method with the allowance, at STC, and on the hottest
+// roof; the hot operating voltage with the allowance.
+type Voltages struct{ VocCold, VocSTC, VocHot, VmpSTC, VmpHot quantity.Exact }
+
+// Voltages returns the voltages of a strings entry, by its index in the design.
+func (a *Array) Voltages(i int) Voltages {
 	e := &a.wired[i]
-	v := &a.planes[e.plane]
-	return e.vocCold, e.terms.Series.Times(v.terms.Vmp), e.terms.Series.Times(v.vmpHot)
+	v, n := &a.planes[e.plane], e.terms.Series.Value()
+	return Voltages{
+		VocCold: e.vocCold.Value(), VocSTC: n.Mul(v.datasheet.VocV), VocHot: n.Mul(v.vocHot.Value()),
+		VmpSTC: n.Mul(v.datasheet.VmpV), VmpHot: n.Mul(v.vmpHot.Value()),
+	}
 }
 
 // PlaneOf returns the index of the plane a strings entry lies on.
