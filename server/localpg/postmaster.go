@@ -186,6 +186,7 @@ func (s *Server) awaitReady(ctx context.Context, pm *postmaster) error {
 const (
 	noSuchDatabase     = "3D000"
 	noSuchRole         = "28000"
+	roleExists         = "42710"
 	tooManyConnections = "53300"
 )
 
@@ -208,21 +209,32 @@ func (s *Server) greet(ctx context.Context) error {
 	return err
 }
 
-// makeDatabase makes the role and the database that the service uses. It may have been
-// interrupted between the two before.
+// makeDatabase makes the role and the database that the service uses, as far as they
+// are not there: it may have been interrupted before.
 func (s *Server) makeDatabase(ctx context.Context) error {
-	conn, err := pgx.Connect(ctx, s.AdminDSN())
+	conn, err := pgx.Connect(ctx, s.place.dsn(superuser, "template1"))
 	if err != nil {
 		return err
 	}
-	for _, statement := range []string{
-		"create role " + role + " login",
-		"create database " + Database + " owner " + role,
+	for _, step := range []struct{ statement, instead string }{
+		{"create role " + role + " login", ""},
+		// A new cluster has an empty database that nobody needs here. To make another
+		// one writes hundreds of files, which takes as long as all the rest.
+		{"alter database postgres rename to " + Database, "create database " + Database},
+		{"alter database " + Database + " owner to " + role, ""},
+		{"comment on database " + Database + " is 'what Rimeline saves'", ""},
 	} {
-		_, err := conn.Exec(ctx, statement)
-		refusal, ok := errors.AsType[*pgconn.PgError](err)
-		if exists := ok && (refusal.Code == "42710" || refusal.Code == "42P04"); err != nil && !exists {
-			return errors.Join(fmt.Errorf("%s: %w", statement, err), conn.Close(ctx))
+		_, err := conn.Exec(ctx, step.statement)
+		if refusal, ok := errors.AsType[*pgconn.PgError](err); ok {
+			switch refusal.Code {
+			case roleExists:
+				err = nil
+			case noSuchDatabase:
+				_, err = conn.Exec(ctx, step.instead)
+			}
+		}
+		if err != nil {
+			return errors.Join(fmt.Errorf("%s: %w", step.statement, err), conn.Close(ctx))
 		}
 	}
 	return conn.Close(ctx)

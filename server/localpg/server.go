@@ -211,7 +211,7 @@ func (s *Server) PID() int {
 func (s *Server) DSN() string { return s.place.dsn(role, Database) }
 
 // AdminDSN is a connection string with all rights, for maintenance and for tests.
-func (s *Server) AdminDSN() string { return s.place.dsn(superuser, "postgres") }
+func (s *Server) AdminDSN() string { return s.place.dsn(superuser, Database) }
 
 // Stop ends the server: open transactions are undone, what is committed is written
 // out, and the directory is free. When ctx ends before that is over, the server is

@@ -962,7 +962,7 @@ func TestStart_InterruptedBeforeDatabase(t *testing.T) {
 	dir := usedDir(t)
 	s := start(t, Options{Dir: dir})
 	for _, lacking := range [][]string{{"database"}, {"database", "role"}} {
-		admin := connect(t, s.AdminDSN())
+		admin := connect(t, s.place.dsn(superuser, "template1"))
 		for _, what := range lacking {
 			exec1(t, admin, "drop "+what+" rimeline")
 		}
@@ -1013,19 +1013,5 @@ func BenchmarkStart_Warm(b *testing.B) {
 		b.StopTimer()
 		stop(b, s)
 		b.StartTimer()
-	}
-}
-
-func BenchmarkStop(b *testing.B) {
-	dir := openDirIn(b, "")
-	b.StopTimer()
-	for b.Loop() {
-		s, err := Start(b.Context(), Options{Dir: dir, Getenv: os.Getenv})
-		if err != nil {
-			b.Fatal(err)
-		}
-		b.StartTimer()
-		stop(b, s)
-		b.StopTimer()
 	}
 }
