@@ -311,7 +311,33 @@ func (b *pageBuilder) job() views.Section {
 	return views.Section{
 		ID: "job", Number: "7", Heading: "The job, for the sheet's title strip", Folded: true,
 		Open:   b.filled(fields),
-		Groups: []views.Group{{ID: "job-fields", Label: "Job", Fields: fields}},
+		Groups: []views.Group{{ID: "job-fields", Label: "Job", Fields: fields, Hidden: b.keptAnswers()}},
+	}
+}
+
+// keptAnswers are the answers about values that have no place for questions; they
+// go along unseen.
+func (b *pageBuilder) keptAnswers() []views.HiddenField {
+	var kept []views.HiddenField
+	shown := b.slots()
+	for _, pointer := range slices.Sorted(maps.Keys(b.asked)) {
+		if slices.ContainsFunc(shown, func(s views.Slot) bool { return s.ID == views.FieldID(pointer)+"-asked" }) {
+			continue
+		}
+		for _, a := range b.asked[pointer] {
+			kept = append(kept, hiddenAnswer(a)...)
+		}
+	}
+	return kept
+}
+
+// hiddenAnswer is an answer as fields that are not shown.
+func hiddenAnswer(a views.Asked) []views.HiddenField {
+	at := "/answers/" + a.Index
+	return []views.HiddenField{
+		{Name: at + "/pointer", Value: a.Pointer},
+		{Name: at + "/value_asked", Value: a.Value},
+		{Name: at + "/reason", Value: a.Reason},
 	}
 }
 
@@ -749,11 +775,7 @@ func askedBeside(j judged) map[string][]views.Asked {
 			}
 			if earlier, ok := given[key]; ok {
 				a.Earlier = earlier.Reason
-				a.Kept = []views.HiddenField{
-					{Name: "/answers/" + earlier.Index + "/pointer", Value: earlier.Pointer},
-					{Name: "/answers/" + earlier.Index + "/value_asked", Value: earlier.Value},
-					{Name: "/answers/" + earlier.Index + "/reason", Value: earlier.Reason},
-				}
+				a.Kept = hiddenAnswer(earlier)
 				delete(given, key)
 			}
 			next++

@@ -252,6 +252,8 @@ func TestFile_ThereAndBack(t *testing.T) {
 		{"sound", nil, 200},
 		{"with a reason", map[string]string{"/modules/0/pmax_w": "390", "/answers/0/pointer": "/modules/0/pmax_w",
 			"/answers/0/value_asked": `{"imp_a":13.12,"pmax_w":390,"vmp_v":31.26}`, "/answers/0/reason": "as on the label"}, 200},
+		{"with a reason about a value that is not asked about", map[string]string{"/answers/0/pointer": "/planes/0/tilt_deg", "/answers/0/value_asked": "30", "/answers/0/reason": "measured"}, 200},
+		{"with sources", map[string]string{"/sources/~1modules~10": "datasheet", "/sources/~1planes~10~1positions": "counted on site"}, 200},
 		{"in °F", map[string]string{"/site/coldest_c/value": "7", "/site/coldest_c/unit": "°F"}, 200},
 		{"half finished", map[string]string{"/modules/0/voc_v": "", "/rulebook": "", "/site/coldest_c/value": ""}, 422},
 		{"unreadable", map[string]string{"/modules/0/voc_v": "fourty V", "/planes/0/positions": "1.2.3", "/site/coldest_c/value": "<b>"}, 422},
