@@ -38,7 +38,7 @@ type turnOutcome string
 const (
 	turns         turnOutcome = "turns"
 	notADocument  turnOutcome = "not tried: the reader refuses the value"
-	questionFirst turnOutcome = "not tried: a question opens or closes on the way"
+	questionFirst turnOutcome = "not tried: a question opens or closes before"
 	tooClose      turnOutcome = "not tried: nearer than the digits printed"
 )
 
@@ -96,7 +96,7 @@ func (tn turn) try(doc object, now check, open []string) (turnOutcome, error) {
 			if err != nil {
 				return "", err
 			}
-			if !slices.Equal(openQuestions(r.Questions), open) {
+			if side == 0 && !slices.Equal(openQuestions(r.Questions), open) {
 				return questionFirst, nil
 			}
 			c, there := r.check(now.ID, now.About.place())
