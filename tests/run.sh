@@ -52,8 +52,10 @@ go vet ./...
 say "staticcheck"
 go tool staticcheck ./...
 
-say "go test -race -short"
-go test -race -short -count=1 -timeout 15m ./...
-
+status=0
 say "go test"
-go test -count=1 -timeout 20m ./...
+go test -count=1 -timeout 15m ./... || status=1
+
+say "go test -race -short"
+go test -race -short -count=1 -timeout 15m ./... || status=1
+exit $status
