@@ -9,8 +9,10 @@ import (
 // FieldID returns the id of the element for a field of the design form, by the
 // field's JSON Pointer; an anchor to it is "#" and the id.
 func FieldID(pointer string) string {
-	return "f" + strings.NewReplacer("/", "-", "~", "_", " ", "_").Replace(pointer)
+	return "f" + idSigns.Replace(pointer)
 }
+
+var idSigns = strings.NewReplacer("/", "-", "~", "_", " ", "_")
 
 // Field is one thing to type or to choose, with its label.
 type Field struct {

@@ -1,6 +1,7 @@
 package form
 
 import (
+	"maps"
 	"strconv"
 	"strings"
 )
@@ -141,9 +142,7 @@ func (f *Form) CopyFirst(pointer string) bool {
 			copied[pointer+"/"+rest] = typed
 		}
 	}
-	for name, typed := range copied {
-		f.texts[name] = typed
-	}
+	maps.Copy(f.texts, copied)
 	f.texts[pointer+"/id"] = id
 	return true
 }
