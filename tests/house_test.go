@@ -206,6 +206,30 @@ func TestHouse_ImportTable_CanFail(t *testing.T) {
 	}
 }
 
+// TestHouse_TestHelpStaysInTests: what is made for tests is in no program that people
+// run.
+func TestHouse_TestHelpStaysInTests(t *testing.T) {
+	for _, p := range listPackages(t) {
+		for _, used := range p.Imports { // of its files that are no tests
+			if strings.HasPrefix(used, module+"/tests") {
+				t.Errorf("%s uses %s outside its tests: help for tests would be linked into the program", p.room(), used)
+			}
+		}
+	}
+	set, files := goFiles(t)
+	for name, file := range files {
+		if slices.Contains([]string{"server/localpg", "tests/testdb"}, path.Dir(name)) {
+			continue
+		}
+		ast.Inspect(file, func(n ast.Node) bool {
+			if id, ok := n.(*ast.Ident); ok && id.Name == "UnsafeForTests" {
+				t.Errorf("%s sets UnsafeForTests: what somebody saved could be lost with the power", set.Position(id.Pos()))
+			}
+			return true
+		})
+	}
+}
+
 func TestHouse_PackageComments(t *testing.T) {
 	for _, p := range listPackages(t) {
 		doc := p.Doc
@@ -359,7 +383,7 @@ func TestHouse_WhereTheWorldComesIn(t *testing.T) {
 		rooms            []string
 		why              string
 	}{
-		{"os", "Getenv", []string{"cmd/rimeline", "tests/load"}, "the environment is read in one place, so that everything else can be tested without it"},
+		{"os", "Getenv", []string{"cmd/rimeline", "tests/load", "tests/testdb"}, "the environment is read in one place, so that everything else can be tested without it"},
 		{"os", "LookupEnv", []string{"cmd/rimeline"}, "the environment is read in one place, so that everything else can be tested without it"},
 		{"os", "Args", []string{"cmd/rimeline", "tests/load"}, "flags are read in one place"},
 		{"os", "Exit", []string{"cmd/rimeline", "tests/load"}, "only the command ends the program"},

@@ -1,7 +1,7 @@
 #!/bin/bash
 # Runs every test on a Debian machine, and installs first what they need and the
 # machine lacks. On another system: have Go, git, a C compiler (for the race
-# detector) and Chromium, and run it too.
+# detector), Chromium and PostgreSQL, and run it too.
 set -euo pipefail
 cd "$(dirname "${BASH_SOURCE[0]}")/.."
 export CI=true # a test that lacks what it needs fails instead of skipping
@@ -26,6 +26,9 @@ command -v git >/dev/null || missing+=(git)
 command -v gcc >/dev/null || missing+=(gcc libc6-dev)
 command -v chromium >/dev/null || command -v chromium-browser >/dev/null || command -v google-chrome >/dev/null ||
 	missing+=(chromium fonts-dejavu-core)
+# Of PostgreSQL the tests use the programs alone and start servers of their own; the one
+# that the package may set up is not touched.
+command -v initdb >/dev/null || compgen -G '/usr/lib/postgresql/*/bin/initdb' >/dev/null || missing+=(postgresql)
 [ -e /etc/ssl/certs/ca-certificates.crt ] || missing+=(ca-certificates)
 if ! command -v go >/dev/null && [ -x /usr/local/go/bin/go ]; then PATH=/usr/local/go/bin:$PATH; fi
 command -v go >/dev/null || missing+=(golang-go)
