@@ -2,6 +2,7 @@ package server
 
 import (
 	"bytes"
+	"cmp"
 	"context"
 	"encoding/json"
 	"errors"
@@ -21,6 +22,8 @@ type statusError struct {
 	message string            // sentences for the visitor; nothing of the program's inside
 	cause   error             // for the log; nil if the message says it all
 	header  map[string]string // further headers of the answer
+	heading string            // of the page; "" is what the status means
+	newest  int64             // the number of what is newest, where the request rests on what is not; else 0
 }
 
 func (e *statusError) Error() string {
@@ -43,7 +46,7 @@ func badRequest(message string, cause error) error {
 func methodNotAllowed(routes chi.Routes) handler {
 	return func(_ http.ResponseWriter, r *http.Request) error {
 		var allowed []string
-		for _, method := range []string{http.MethodGet, http.MethodHead, http.MethodPost} {
+		for _, method := range []string{http.MethodGet, http.MethodHead, http.MethodPost, http.MethodPut, http.MethodDelete} {
 			tried := method
 			if tried == http.MethodHead {
 				tried = http.MethodGet // GetHead answers HEAD wherever there is a GET
@@ -64,48 +67,54 @@ func methodNotAllowed(routes chi.Routes) handler {
 // statusClientGone is what the log calls a request whose client did not wait for the answer.
 const statusClientGone = 499
 
-// describe says which status an error has and what the visitor is told of it.
-func describe(err error) (status int, message string, header map[string]string) {
+// describe says what an error is to the visitor, or to a program.
+func describe(err error, forProgram bool) *statusError {
 	if e, ok := errors.AsType[*statusError](err); ok {
-		return e.status, e.message, e.header
+		return e
+	}
+	if e := savingFailure(err, forProgram); e != nil {
+		return e
 	}
 	if errors.Is(err, context.Canceled) {
-		return statusClientGone, "The request was given up.", nil
+		return &statusError{status: statusClientGone, message: "The request was given up."}
 	}
-	return http.StatusInternalServerError,
-		"What was sent could not be judged, and nothing was answered in its place. Please try again.", nil
+	return &statusError{
+		status:  http.StatusInternalServerError,
+		message: "What was sent could not be worked on, and nothing was answered in its place. Please try again.",
+	}
 }
 
 // serveError is the only place where an error becomes an answer: it chooses the
 // status, logs the error and shows the visitor a message and the request's id. The
 // text of an error that was not meant for visitors stays in the log.
 func (s *Server) serveError(w http.ResponseWriter, r *http.Request, err error) {
-	status, message, header := describe(err)
+	forProgram := strings.HasPrefix(r.URL.Path, "/api/")
+	f := describe(err, forProgram)
 	id := visitOf(r).requestID
 	log := s.log.InfoContext
-	if status >= http.StatusInternalServerError {
+	if f.status >= http.StatusInternalServerError {
 		log = s.log.ErrorContext
 	}
-	log(r.Context(), "request refused or failed", "request_id", id, "status", status, "error", err)
+	log(r.Context(), "request refused or failed", "request_id", id, "status", f.status, "error", err)
 
 	if rec, ok := w.(*recorder); ok && rec.status != 0 {
 		s.log.ErrorContext(r.Context(), "a handler answered and returned an error", "request_id", id)
 		return
 	}
-	for name, value := range header {
+	for name, value := range f.header {
 		w.Header().Set(name, value)
 	}
-	if strings.HasPrefix(r.URL.Path, "/api/") {
-		writeProblem(w, problem{Status: status, Detail: message, RequestID: id})
+	if forProgram {
+		writeProblem(w, problem{Status: f.status, Detail: f.message, RequestID: id, Newest: f.newest})
 		return
 	}
-	heading := failureHeading(status)
+	heading := cmp.Or(f.heading, failureHeading(f.status))
 	base := newBase(heading, "")
 	base.Scripts = nil
-	page := views.Failure(views.FailurePage{Base: base, Heading: heading, Message: message, RequestID: id})
-	if err := s.render(w, r, status, page); err != nil {
+	page := views.Failure(views.FailurePage{Base: base, Heading: heading, Message: f.message, RequestID: id})
+	if err := s.render(w, r, f.status, page); err != nil {
 		s.log.ErrorContext(r.Context(), "the page of an error failed too", "request_id", id, "error", err)
-		http.Error(w, message+"\n\nRequest "+id, status)
+		http.Error(w, f.message+"\n\nRequest "+id, f.status)
 	}
 }
 
@@ -133,6 +142,7 @@ type problem struct {
 	Status    int             `json:"status"`
 	Detail    string          `json:"detail"`
 	RequestID string          `json:"request_id,omitempty"`
+	Newest    int64           `json:"newest,omitempty"` // with 412: the number of the newest revision or version
 	Errors    json.RawMessage `json:"errors,omitempty"` // every reason why a document is refused
 }
 

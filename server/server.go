@@ -34,6 +34,12 @@ type Config struct {
 	// Version is what /healthz and the foot of the pages call the program.
 	Version string
 
+	// Saving returns where designs are kept, or an error of the kind
+	// record.ErrUnavailable, such as [ErrStarting]. It is called for each request
+	// that needs it, so that saving may come while the server serves. nil is a
+	// server that saves nothing.
+	Saving func() (Saving, error)
+
 	// NewRequestID names a request in the log and in the answer. nil is a random
 	// text of 26 characters.
 	NewRequestID func() string
