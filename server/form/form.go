@@ -2,7 +2,6 @@ package form
 
 import (
 	"errors"
-	"maps"
 	"net/url"
 	"slices"
 	"strconv"
@@ -256,6 +255,3 @@ func (f *Form) dropOpenAnswers() {
 		}
 	}
 }
-
-// Clone returns a copy that shares nothing with f.
-func (f *Form) Clone() *Form { return &Form{texts: maps.Clone(f.texts), lens: maps.Clone(f.lens)} }
