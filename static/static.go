@@ -13,20 +13,18 @@ import (
 	"strings"
 )
 
-// The pattern takes the Go files in too; only names with a known type are offered.
+// Pictures for the README stay out of the program.
 //
-//go:embed *
+//go:embed *.css *.js *.svg *.txt
 var embedded embed.FS
 
 // types are the kinds of file that are sent, by the ending of the name. They stand
 // here because a table of the machine would make answers differ between machines.
 var types = map[string]string{
-	".css":  "text/css; charset=utf-8",
-	".js":   "text/javascript; charset=utf-8",
-	".svg":  "image/svg+xml",
-	".png":  "image/png",
-	".txt":  "text/plain; charset=utf-8",
-	".json": "application/json",
+	".css": "text/css; charset=utf-8",
+	".js":  "text/javascript; charset=utf-8",
+	".svg": "image/svg+xml",
+	".txt": "text/plain; charset=utf-8", // licences
 }
 
 // File is one file as it is sent.
@@ -48,8 +46,8 @@ func load() (map[string]File, map[string]string) {
 	for _, entry := range entries {
 		ext := path.Ext(entry.Name())
 		contentType, ok := types[ext]
-		if !ok || entry.IsDir() {
-			continue
+		if !ok {
+			panic(fmt.Sprintf("static: %s has no content type", entry.Name()))
 		}
 		content, err := embedded.ReadFile(entry.Name())
 		if err != nil {

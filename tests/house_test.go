@@ -132,6 +132,11 @@ func TestHouse_ImportTable(t *testing.T) {
 	for _, p := range listPackages(t) {
 		name := p.room()
 		if isEverything(name) {
+			for _, used := range p.Imports {
+				if !strings.HasPrefix(name, "tests") && strings.HasPrefix(used, module+"/tests") {
+					t.Errorf("%s uses %s: what helps the tests must not come into the program", name, used)
+				}
+			}
 			continue
 		}
 		row, ok := table[name]
