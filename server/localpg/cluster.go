@@ -7,6 +7,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"io/fs"
 	"os"
 	"os/exec"
 	"strings"
@@ -20,6 +21,10 @@ func (s *Server) makeCluster(ctx context.Context) error {
 	if err := s.place.removeUnfinished(); err != nil {
 		return err
 	}
+	// Of a directory this removes an empty one only.
+	if err := os.Remove(s.place.data); err != nil && !errors.Is(err, fs.ErrNotExist) {
+		return fmt.Errorf("%s is in the way and not what PostgreSQL makes: %w", s.place.data, err)
+	}
 	dir, err := os.MkdirTemp(s.place.dir, newPrefix+"*")
 	if err != nil {
 		return err
@@ -31,7 +36,7 @@ func (s *Server) makeCluster(ctx context.Context) error {
 		return errors.Join(err, os.RemoveAll(dir))
 	}
 	if err := os.Rename(dir, s.place.data); err != nil {
-		return fmt.Errorf("%s is in the way: %w", s.place.data, errors.Join(err, os.RemoveAll(dir)))
+		return errors.Join(err, os.RemoveAll(dir))
 	}
 	return syncDir(s.place.dir)
 }

@@ -13,6 +13,7 @@ import (
 	"strconv"
 	"strings"
 	"syscall"
+	"time"
 )
 
 // place is the directory of a private PostgreSQL and what lies in it. The directory
@@ -49,7 +50,7 @@ func claim(dir string) (place, error) {
 	if err != nil {
 		return place{}, fmt.Errorf("the data directory %s cannot be used: %w%s", dir, err, ownerHint(dir, err))
 	}
-	err = syscall.Flock(int(p.lock.Fd()), syscall.LOCK_EX|syscall.LOCK_NB)
+	err = lockFile(p.lock)
 	if errors.Is(err, syscall.EWOULDBLOCK) {
 		err = fmt.Errorf("%w: %s belongs to process %s, which is running", ErrInUse, dir, lockHolder(p.lock))
 	}
@@ -60,6 +61,19 @@ func claim(dir string) (place, error) {
 		return place{}, errors.Join(err, p.lock.Close())
 	}
 	return p, nil
+}
+
+// lockFile takes the lock. It tries for a moment: an owner that was killed while it
+// started a program leaves that a copy of the lock, until the program begins to run.
+func lockFile(f *os.File) error {
+	const pause, tries = 20 * time.Millisecond, 25
+	for n := 0; ; n++ {
+		err := syscall.Flock(int(f.Fd()), syscall.LOCK_EX|syscall.LOCK_NB)
+		if !errors.Is(err, syscall.EWOULDBLOCK) || n == tries {
+			return err
+		}
+		time.Sleep(pause)
+	}
 }
 
 // makeDir makes the directory, its parents as well. Where root makes it, the user that

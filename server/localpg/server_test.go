@@ -250,15 +250,19 @@ func until(t testing.TB, what string, condition func() bool) {
 		if time.Now().After(deadline) {
 			t.Fatalf("waited in vain until %s", what)
 		}
-		time.Sleep(5 * time.Millisecond)
+		time.Sleep(2 * time.Millisecond)
 	}
 }
 
-// running reports whether a process runs. One that has ended and that nobody has asked
-// how is none.
+// running reports whether a process runs. One that has ended and whose parent has not
+// asked how is none.
 func running(pid int) bool {
-	state, err := exec.Command("ps", "-o", "stat=", "-p", strconv.Itoa(pid)).Output()
-	return err == nil && !bytes.HasPrefix(bytes.TrimSpace(state), []byte("Z"))
+	if runtime.GOOS != "linux" {
+		state, err := exec.Command("ps", "-o", "stat=", "-p", strconv.Itoa(pid)).Output()
+		return err == nil && !bytes.HasPrefix(bytes.TrimSpace(state), []byte("Z"))
+	}
+	stat, err := os.ReadFile(fmt.Sprintf("/proc/%d/stat", pid))
+	return err == nil && !bytes.Contains(stat, []byte(") Z "))
 }
 
 func kill(t testing.TB, pid int) {
@@ -929,29 +933,34 @@ func TestStart_OddDirectories(t *testing.T) {
 	}
 }
 
-// TestStart_Interrupted kills the owner at many moments of its first start. Whatever is
-// left then, the next start makes the server, and leaves nothing half made behind.
+// TestStart_Interrupted kills the owner at each step of its first start. Whatever is left
+// then, the next start makes the server, and leaves nothing half made behind.
 func TestStart_Interrupted(t *testing.T) {
 	t.Parallel()
-	moments := []time.Duration{20, 150, 400, 700, 1000}
-	if testing.Short() {
-		moments = moments[1:4]
-	}
-	for _, after := range moments {
-		dir := openDir(t)
-		o := startOwner(t, dir, nil)
-		time.Sleep(after * time.Millisecond)
-		o.kill()
-		_, err := os.Stat(filepath.Join(dir, "data"))
-		t.Logf("killed after %d ms; data made: %t", after, err == nil)
-		s := start(t, Options{Dir: dir})
-		if err := connect(t, s.DSN()).Ping(t.Context()); err != nil {
-			t.Error(err)
-		}
-		if left, err := filepath.Glob(filepath.Join(dir, newPrefix+"*")); err != nil || len(left) > 0 {
-			t.Errorf("left behind: %q, %v", left, err)
-		}
-		stop(t, s)
+	for _, step := range []struct{ name, file string }{
+		{"locked", "lock"},
+		{"begun", newPrefix + "*"},
+		{"initdb at work", newPrefix + "*/PG_VERSION"},
+		{"initdb further", newPrefix + "*/base/1/PG_VERSION"},
+		{"complete", "data"},
+		{"starting", "data/postmaster.pid"},
+		{"answering", "run/.s.PGSQL.5432"},
+	} {
+		t.Run(step.name, func(t *testing.T) {
+			dir := openDir(t)
+			o := startOwner(t, dir, nil)
+			until(t, step.file+" is there", func() bool {
+				found, err := filepath.Glob(filepath.Join(dir, step.file))
+				return err == nil && len(found) > 0
+			})
+			o.kill()
+			s := start(t, Options{Dir: dir})
+			exec1(t, connect(t, s.DSN()), "create table note (n int)")
+			if left, err := filepath.Glob(filepath.Join(dir, "*.new-*")); err != nil || len(left) > 0 {
+				t.Errorf("left behind: %q, %v", left, err)
+			}
+			stop(t, s)
+		})
 	}
 }
 
