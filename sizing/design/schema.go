@@ -69,7 +69,8 @@ func (o *object) reference(name, label string, s *ids) (id string, index int32) 
 // walk carries what one part of the document must know of another.
 type walk struct {
 	*reader
-	d *Design
+	d     *Design
+	alone bool // one module or inverter is read, which has no id
 
 	modules, inverters, planes ids
 	trackers                   []ids  // by inverter
@@ -192,7 +193,9 @@ func (w *walk) module(m *Module, n int32) {
 		w.modules.complete = false
 		return
 	}
-	m.ID = w.id(&o, &w.modules, n)
+	if !w.alone {
+		m.ID = w.id(&o, &w.modules, n)
+	}
 	m.Maker, _ = o.text("maker", "the maker", may)
 	m.Model, _ = o.text("model", "the model", may)
 	m.Technology = o.word("technology", "the technology of the cells", Technologies, "")
@@ -369,7 +372,9 @@ func (w *walk) inverter(v *Inverter, n int32) {
 		w.inverters.complete = false
 		return
 	}
-	v.ID = w.id(&o, &w.inverters, n)
+	if !w.alone {
+		v.ID = w.id(&o, &w.inverters, n)
+	}
 	v.Maker, _ = o.text("maker", "the maker", may)
 	v.Model, _ = o.text("model", "the model", may)
 	units := o.whole("quantity", "the quantity", may, 1)

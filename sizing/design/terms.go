@@ -12,7 +12,8 @@ import (
 // point which no document could state is never offered. A number that is not
 // stated is nil.
 type Terms struct {
-	Coldest, Hottest *working.Term // °C
+	Sheet            *working.Sheet // that they are written on
+	Coldest, Hottest *working.Term  // °C
 	ColdestInput     *working.Input
 	ColdestAt25      quantity.Exact // 25 °C in the unit of ColdestInput
 	Elevation        *working.Term  // m
@@ -96,7 +97,9 @@ var (
 
 // NewTerms returns the terms of a design.
 func NewTerms(d *Design) *Terms {
+	s := new(working.Sheet)
 	t := &Terms{
+		Sheet:       s,
 		Modules:     make([]ModuleTerms, len(d.Modules)),
 		Inverters:   make([]InverterTerms, len(d.Inverters)),
 		Planes:      make([]PlaneTerms, len(d.Planes)),
@@ -104,40 +107,40 @@ func NewTerms(d *Design) *Terms {
 		Strings:     make([]StringTerms, len(d.Strings)),
 	}
 	coldest, hottest := d.Site.Coldest.Celsius(), d.Site.Hottest.Celsius()
-	t.Coldest, t.ColdestInput = temperatureTerm("Tcold", "/site/coldest_c", d.Site.Coldest, lowestSiteC, quantity.Min(hottest, highestSiteC))
-	t.Hottest, _ = temperatureTerm("Thot", "/site/hottest_c", d.Site.Hottest, quantity.Max(coldest, lowestSiteC), highestSiteC)
+	t.Coldest, t.ColdestInput = temperatureTerm(s, "Tcold", "/site/coldest_c", d.Site.Coldest, lowestSiteC, quantity.Min(hottest, highestSiteC))
+	t.Hottest, _ = temperatureTerm(s, "Thot", "/site/hottest_c", d.Site.Hottest, quantity.Max(coldest, lowestSiteC), highestSiteC)
 	t.ColdestAt25 = quantity.Int(25)
 	if d.Site.Coldest.Fahrenheit {
 		t.ColdestAt25 = toFahrenheit(t.ColdestAt25)
 	}
-	t.Elevation = stated("elevation", "m", "/site/elevation_m", d.Site.ElevationM, nil, nil)
-	t.ColdPct = stated("acold", "%", "/allowances/cold_voltage_pct", d.Allowances.ColdVoltagePct, &zero, nil)
-	t.HotPct = stated("ahot", "%", "/allowances/hot_voltage_pct", d.Allowances.HotVoltagePct, &zero, &hundred)
+	t.Elevation = stated(s, "elevation", "m", "/site/elevation_m", d.Site.ElevationM, nil, nil)
+	t.ColdPct = stated(s, "acold", "%", "/allowances/cold_voltage_pct", d.Allowances.ColdVoltagePct, &zero, nil)
+	t.HotPct = stated(s, "ahot", "%", "/allowances/hot_voltage_pct", d.Allowances.HotVoltagePct, &zero, &hundred)
 	if d.Allowances.HeadroomC != nil {
-		t.Headroom = differenceTerm("headroom", "/allowances/headroom_c", *d.Allowances.HeadroomC)
+		t.Headroom = differenceTerm(s, "headroom", "/allowances/headroom_c", *d.Allowances.HeadroomC)
 	} else {
 		t.Headroom = working.Number(defaultRoomC)
 	}
 	for i := range d.Modules {
-		t.Modules[i] = moduleTerms(&d.Modules[i], "/modules/"+strconv.Itoa(i)+"/", numbered(",m", i, len(d.Modules) > 1))
+		t.Modules[i] = moduleTerms(s, &d.Modules[i], "/modules/"+strconv.Itoa(i)+"/", numbered(",m", i, len(d.Modules) > 1))
 	}
 	for i := range d.Inverters {
-		t.Inverters[i] = inverterTerms(&d.Inverters[i], "/inverters/"+strconv.Itoa(i)+"/")
+		t.Inverters[i] = inverterTerms(s, &d.Inverters[i], "/inverters/"+strconv.Itoa(i)+"/")
 	}
 	mixed := planesShareTracker(d)
 	for i := range d.Planes {
-		t.Planes[i] = planeTerms(&d.Planes[i], "/planes/"+strconv.Itoa(i)+"/", numbered(",p", i, mixed))
+		t.Planes[i] = planeTerms(s, &d.Planes[i], "/planes/"+strconv.Itoa(i)+"/", numbered(",p", i, mixed))
 	}
 	for i := range d.OtherLimits {
 		o := &d.OtherLimits[i]
-		t.OtherLimits[i] = positive("Vother,"+strconv.Itoa(i+1), "V", "/other_limits/"+strconv.Itoa(i)+"/max_voltage_v", o.MaxVoltageV)
+		t.OtherLimits[i] = positive(s, "Vother,"+strconv.Itoa(i+1), "V", "/other_limits/"+strconv.Itoa(i)+"/max_voltage_v", o.MaxVoltageV)
 	}
 	for i := range d.Strings {
-		s, at := &d.Strings[i], "/strings/"+strconv.Itoa(i)+"/"
+		e, at := &d.Strings[i], "/strings/"+strconv.Itoa(i)+"/"
 		suffix := numbered("", i, len(d.Strings) > 1)
 		t.Strings[i] = StringTerms{
-			Series:   count("n"+suffix, at+"modules_in_series", s.ModulesInSeries),
-			Parallel: count("s"+suffix, at+"strings_in_parallel", s.StringsInParallel),
+			Series:   count(s, "n"+suffix, at+"modules_in_series", e.ModulesInSeries),
+			Parallel: count(s, "s"+suffix, at+"strings_in_parallel", e.StringsInParallel),
 		}
 	}
 	return t
@@ -170,38 +173,38 @@ func planesShareTracker(d *Design) bool {
 	return false
 }
 
-func bounded(symbol, unit, pointer string, now quantity.Exact, low, high *quantity.Exact) *working.Term {
-	return working.Of(symbol, unit, &working.Input{Pointer: pointer, Now: now, Low: low, High: high})
+func bounded(s *working.Sheet, symbol, unit, pointer string, now quantity.Exact, low, high *quantity.Exact) *working.Term {
+	return s.Of(symbol, unit, &working.Input{Pointer: pointer, Now: now, Low: low, High: high})
 }
 
-func positive(symbol, unit, pointer string, now quantity.Exact) *working.Term {
-	return bounded(symbol, unit, pointer, now, &zero, nil)
+func positive(s *working.Sheet, symbol, unit, pointer string, now quantity.Exact) *working.Term {
+	return bounded(s, symbol, unit, pointer, now, &zero, nil)
 }
 
-func stated(symbol, unit, pointer string, now *quantity.Exact, low, high *quantity.Exact) *working.Term {
+func stated(s *working.Sheet, symbol, unit, pointer string, now *quantity.Exact, low, high *quantity.Exact) *working.Term {
 	if now == nil {
 		return nil
 	}
-	return bounded(symbol, unit, pointer, *now, low, high)
+	return bounded(s, symbol, unit, pointer, *now, low, high)
 }
 
-func count(symbol, pointer string, now int64) *working.Term {
-	return working.Of(symbol, "", &working.Input{Pointer: pointer, Now: quantity.Int(now), Whole: true})
+func count(s *working.Sheet, symbol, pointer string, now int64) *working.Term {
+	return s.Of(symbol, "", &working.Input{Pointer: pointer, Now: quantity.Int(now), Whole: true})
 }
 
 // temperatureTerm returns a temperature in °C, by its conversion where the
 // document states °F, and the input itself. The bounds are in °C.
-func temperatureTerm(symbol, pointer string, t Temperature, low, high quantity.Exact) (*working.Term, *working.Input) {
+func temperatureTerm(s *working.Sheet, symbol, pointer string, t Temperature, low, high quantity.Exact) (*working.Term, *working.Input) {
 	if t.Object {
 		pointer += "/value"
 	}
 	if !t.Fahrenheit {
 		in := &working.Input{Pointer: pointer, Now: t.Value, Low: &low, High: &high}
-		return working.Of(symbol, "°C", in), in
+		return s.Of(symbol, "°C", in), in
 	}
 	low, high = toFahrenheit(low), toFahrenheit(high)
 	in := &working.Input{Pointer: pointer, Now: t.Value, Low: &low, High: &high}
-	f := working.Of(symbol+",F", "°F", in)
+	f := s.Of(symbol+",F", "°F", in)
 	return working.Named(symbol, "°C", f.Minus(working.Whole(32)).Times(working.Whole(5)).Over(working.Whole(9))), in
 }
 
@@ -209,42 +212,42 @@ func toFahrenheit(c quantity.Exact) quantity.Exact {
 	return c.Mul(quantity.Ratio(9, 5)).Add(quantity.Int(32))
 }
 
-func moduleTerms(m *Module, at, suffix string) ModuleTerms {
+func moduleTerms(s *working.Sheet, m *Module, at, suffix string) ModuleTerms {
 	vocLow, vocHigh := vocBounds(m)
 	t := ModuleTerms{
-		Pmax:             positive("Pmax"+suffix, "W", at+"pmax_w", m.PmaxW),
-		Voc:              bounded("Voc"+suffix, "V", at+"voc_v", m.VocV, vocLow, vocHigh),
-		Isc:              bounded("Isc"+suffix, "A", at+"isc_a", m.IscA, &m.ImpA, nil),
-		Vmp:              bounded("Vmp"+suffix, "V", at+"vmp_v", m.VmpV, &zero, &m.VocV),
-		Imp:              bounded("Imp"+suffix, "A", at+"imp_a", m.ImpA, &zero, &m.IscA),
-		MaxSystemVoltage: positive("Vmodule,max"+suffix, "V", at+"max_system_voltage_v", m.MaxSystemVoltageV),
-		MaxSeriesFuse:    stated("Ifuse,module"+suffix, "A", at+"max_series_fuse_a", m.MaxSeriesFuseA, &zero, nil),
-		IscMarked:        stated("Isc,marked"+suffix, "A", at+"isc_marked_max_a", m.IscMarkedMaxA, &zero, nil),
-		Bifacial:         stated("φ"+suffix, "", at+"bifaciality", m.Bifaciality, nil, nil),
-		Length:           stated("length"+suffix, "mm", at+"length_mm", m.LengthMM, &zero, nil),
-		Width:            stated("width"+suffix, "mm", at+"width_mm", m.WidthMM, &zero, nil),
+		Pmax:             positive(s, "Pmax"+suffix, "W", at+"pmax_w", m.PmaxW),
+		Voc:              bounded(s, "Voc"+suffix, "V", at+"voc_v", m.VocV, vocLow, vocHigh),
+		Isc:              bounded(s, "Isc"+suffix, "A", at+"isc_a", m.IscA, &m.ImpA, nil),
+		Vmp:              bounded(s, "Vmp"+suffix, "V", at+"vmp_v", m.VmpV, &zero, &m.VocV),
+		Imp:              bounded(s, "Imp"+suffix, "A", at+"imp_a", m.ImpA, &zero, &m.IscA),
+		MaxSystemVoltage: positive(s, "Vmodule,max"+suffix, "V", at+"max_system_voltage_v", m.MaxSystemVoltageV),
+		MaxSeriesFuse:    stated(s, "Ifuse,module"+suffix, "A", at+"max_series_fuse_a", m.MaxSeriesFuseA, &zero, nil),
+		IscMarked:        stated(s, "Isc,marked"+suffix, "A", at+"isc_marked_max_a", m.IscMarkedMaxA, &zero, nil),
+		Bifacial:         stated(s, "φ"+suffix, "", at+"bifaciality", m.Bifaciality, nil, nil),
+		Length:           stated(s, "length"+suffix, "mm", at+"length_mm", m.LengthMM, &zero, nil),
+		Width:            stated(s, "width"+suffix, "mm", at+"width_mm", m.WidthMM, &zero, nil),
 		Suffix:           suffix,
 		pointer:          at,
 	}
 	low, high := voltageCoefficientBounds(m.VocCoeff.Unit, m.VocV)
-	t.VocCoeff = coefficientTerm("βVoc"+suffix, at+"voc_temp_coeff", &m.VocCoeff, low, high)
+	t.VocCoeff = coefficientTerm(s, "βVoc"+suffix, at+"voc_temp_coeff", &m.VocCoeff, low, high)
 	if m.VmpCoeff != nil {
 		low, high = voltageCoefficientBounds(m.VmpCoeff.Unit, m.VmpV)
-		t.VmpCoeff = coefficientTerm("βVmp"+suffix, at+"vmp_temp_coeff", m.VmpCoeff, low, high)
+		t.VmpCoeff = coefficientTerm(s, "βVmp"+suffix, at+"vmp_temp_coeff", m.VmpCoeff, low, high)
 	}
-	t.PmaxCoeff = coefficientTerm("γPmax"+suffix, at+"pmax_temp_coeff", m.PmaxCoeff, nil, &zero)
-	t.IscCoeff = coefficientTerm("αIsc"+suffix, at+"isc_temp_coeff", m.IscCoeff, nil, nil)
+	t.PmaxCoeff = coefficientTerm(s, "γPmax"+suffix, at+"pmax_temp_coeff", m.PmaxCoeff, nil, &zero)
+	t.IscCoeff = coefficientTerm(s, "αIsc"+suffix, at+"isc_temp_coeff", m.IscCoeff, nil, nil)
 	if m.CellsInSeries != nil {
-		t.Cells = count("Ncells"+suffix, at+"cells_in_series", *m.CellsInSeries)
+		t.Cells = count(s, "Ncells"+suffix, at+"cells_in_series", *m.CellsInSeries)
 	}
 	return t
 }
 
-func coefficientTerm(symbol, pointer string, c *Coefficient, low, high *quantity.Exact) *CoefficientTerm {
+func coefficientTerm(s *working.Sheet, symbol, pointer string, c *Coefficient, low, high *quantity.Exact) *CoefficientTerm {
 	if c == nil {
 		return nil
 	}
-	return &CoefficientTerm{bounded(symbol, c.UnitText, pointer+"/value", c.Value, low, high), c.Unit}
+	return &CoefficientTerm{bounded(s, symbol, c.UnitText, pointer+"/value", c.Value, low, high), c.Unit}
 }
 
 // voltageCoefficientBounds returns the least and greatest value that the reader
@@ -274,27 +277,27 @@ func vocBounds(m *Module) (low, high *quantity.Exact) {
 	return low, new(perC.Quo(flattestPct))
 }
 
-func inverterTerms(v *Inverter, at string) InverterTerms {
+func inverterTerms(s *working.Sheet, v *Inverter, at string) InverterTerms {
 	t := InverterTerms{
-		MaxDCVoltage: positive("Vinverter,max", "V", at+"max_dc_voltage_v", v.MaxDCVoltageV),
-		MaxDCPower:   stated("Pdc,max", "W", at+"max_dc_power_w", v.MaxDCPowerW, &zero, nil),
-		Start:        stated("Vstart", "V", at+"start_voltage_v", v.StartVoltageV, &zero, nil),
-		BackFeed:     stated("Iback", "A", at+"back_feed_a", v.BackFeedA, &zero, nil),
+		MaxDCVoltage: positive(s, "Vinverter,max", "V", at+"max_dc_voltage_v", v.MaxDCVoltageV),
+		MaxDCPower:   stated(s, "Pdc,max", "W", at+"max_dc_power_w", v.MaxDCPowerW, &zero, nil),
+		Start:        stated(s, "Vstart", "V", at+"start_voltage_v", v.StartVoltageV, &zero, nil),
+		BackFeed:     stated(s, "Iback", "A", at+"back_feed_a", v.BackFeedA, &zero, nil),
 		Trackers:     make([]TrackerTerms, len(v.Trackers)),
 	}
 	for i := range v.Trackers {
 		k, at := &v.Trackers[i], at+"trackers/"+strconv.Itoa(i)+"/"
 		t.Trackers[i] = TrackerTerms{
-			MPPTMin:                 bounded("Vmppt,min", "V", at+"mppt_min_v", k.MPPTMinV, &zero, mppMinBelow(k)),
-			MPPTMax:                 bounded("Vmppt,max", "V", at+"mppt_max_v", k.MPPTMaxV, mppMaxAbove(k), nil),
-			FullPowerMin:            stated("Vfull,min", "V", at+"full_power_min_v", k.FullPowerMinV, &k.MPPTMinV, fullMinBelow(k)),
-			FullPowerMax:            stated("Vfull,max", "V", at+"full_power_max_v", k.FullPowerMaxV, fullMaxAbove(k), &k.MPPTMaxV),
-			Inputs:                  count("inputs", at+"inputs", k.Inputs),
-			MaxInput:                positive("Iin,max", "A", at+"max_input_current_a", k.MaxInputCurrentA),
-			MaxInputPerInput:        stated("Iin,max,1", "A", at+"max_input_current_per_input_a", k.MaxInputPerInputA, &zero, nil),
-			MaxShortCircuit:         stated("Isc,max", "A", at+"max_short_circuit_current_a", k.MaxShortCircuitA, &zero, nil),
-			MaxShortCircuitPerInput: stated("Isc,max,1", "A", at+"max_short_circuit_current_per_input_a", k.MaxShortCircuitPerInputA, &zero, nil),
-			StringFuse:              stated("Ifuse", "A", at+"string_fuse_a", k.StringFuseA, &zero, nil),
+			MPPTMin:                 bounded(s, "Vmppt,min", "V", at+"mppt_min_v", k.MPPTMinV, &zero, mppMinBelow(k)),
+			MPPTMax:                 bounded(s, "Vmppt,max", "V", at+"mppt_max_v", k.MPPTMaxV, mppMaxAbove(k), nil),
+			FullPowerMin:            stated(s, "Vfull,min", "V", at+"full_power_min_v", k.FullPowerMinV, &k.MPPTMinV, fullMinBelow(k)),
+			FullPowerMax:            stated(s, "Vfull,max", "V", at+"full_power_max_v", k.FullPowerMaxV, fullMaxAbove(k), &k.MPPTMaxV),
+			Inputs:                  count(s, "inputs", at+"inputs", k.Inputs),
+			MaxInput:                positive(s, "Iin,max", "A", at+"max_input_current_a", k.MaxInputCurrentA),
+			MaxInputPerInput:        stated(s, "Iin,max,1", "A", at+"max_input_current_per_input_a", k.MaxInputPerInputA, &zero, nil),
+			MaxShortCircuit:         stated(s, "Isc,max", "A", at+"max_short_circuit_current_a", k.MaxShortCircuitA, &zero, nil),
+			MaxShortCircuitPerInput: stated(s, "Isc,max,1", "A", at+"max_short_circuit_current_per_input_a", k.MaxShortCircuitPerInputA, &zero, nil),
+			StringFuse:              stated(s, "Ifuse", "A", at+"string_fuse_a", k.StringFuseA, &zero, nil),
 		}
 	}
 	return t
@@ -336,25 +339,25 @@ func fullMaxAbove(k *Tracker) *quantity.Exact {
 	return &k.MPPTMinV
 }
 
-func planeTerms(p *Plane, at, suffix string) PlaneTerms {
+func planeTerms(s *working.Sheet, p *Plane, at, suffix string) PlaneTerms {
 	t := PlaneTerms{
-		Positions: working.Of("positions", "", &working.Input{Pointer: at + "positions", Now: quantity.Int(p.Positions), Whole: true}),
-		Gain:      stated("gain"+suffix, "%", at+"current_gain_pct", p.CurrentGainPct, &zero, nil),
+		Positions: s.Of("positions", "", &working.Input{Pointer: at + "positions", Now: quantity.Int(p.Positions), Whole: true}),
+		Gain:      stated(s, "gain"+suffix, "%", at+"current_gain_pct", p.CurrentGainPct, &zero, nil),
 	}
 	t.Suffix = suffix
-	t.Rise = differenceTerm("rise", at+"hot_cell_rise_c", p.HotCellRise)
+	t.Rise = differenceTerm(s, "rise", at+"hot_cell_rise_c", p.HotCellRise)
 	return t
 }
 
 // differenceTerm returns a difference of temperatures in °C, by its conversion where the document states °F.
-func differenceTerm(symbol, pointer string, d Difference) *working.Term {
+func differenceTerm(s *working.Sheet, symbol, pointer string, d Difference) *working.Term {
 	if d.Object {
 		pointer += "/value"
 	}
 	if !d.Fahrenheit {
-		return bounded(symbol, "°C", pointer, d.Value, &zero, nil)
+		return bounded(s, symbol, "°C", pointer, d.Value, &zero, nil)
 	}
-	f := bounded(symbol+",F", "°F", pointer, d.Value, &zero, nil)
+	f := bounded(s, symbol+",F", "°F", pointer, d.Value, &zero, nil)
 	return working.Named(symbol, "°C", f.Times(working.Whole(5)).Over(working.Whole(9)))
 }
 

@@ -182,6 +182,10 @@ func (w *writer) site(s *Site) {
 
 func (w *writer) module(m *Module) {
 	w.text("id", m.ID)
+	w.moduleData(m)
+}
+
+func (w *writer) moduleData(m *Module) {
 	w.textIfAny("maker", m.Maker)
 	w.textIfAny("model", m.Model)
 	w.text("technology", m.Technology)
@@ -210,6 +214,10 @@ func (w *writer) module(m *Module) {
 
 func (w *writer) inverter(v *Inverter) {
 	w.text("id", v.ID)
+	w.inverterData(v)
+}
+
+func (w *writer) inverterData(v *Inverter) {
 	w.textIfAny("maker", v.Maker)
 	w.textIfAny("model", v.Model)
 	w.count("quantity", v.Quantity)

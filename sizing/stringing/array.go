@@ -33,8 +33,11 @@ type Array struct {
 	open   []map[string][]working.Rule // by module: the rules by which its doubts bear on a check
 
 	ceilings []ceilingOf // by plane × inverter, found when first asked for
-	planes   []plane
-	wired    []entry
+
+	cites   cites
+	scratch []working.Rule
+	planes  []plane
+	wired   []entry
 }
 
 // entry is a strings entry with its places found and its voltages.
@@ -59,7 +62,10 @@ func NewArray(d *design.Design) *Array {
 
 		planes: make([]plane, len(d.Planes)),
 		wired:  make([]entry, len(d.Strings)),
+
+		scratch: make([]working.Rule, 0, 32),
 	}
+	a.cites = a.newCites()
 	for i := range d.Modules {
 		a.doubts[i] = design.Doubts(d, a.terms, i)
 		a.open[i] = rulesOf(a.doubts[i])
@@ -119,7 +125,7 @@ func rulesOf(doubts []design.Doubt) map[string][]working.Rule {
 		}
 		for k := range doubt.Conditions {
 			r := working.Rule{
-				Broken:  doubt.Conditions[k : k+1],
+				Broken:  [2]*working.Condition{doubt.Conditions[k]},
 				Verdict: working.Unconfirmed,
 				Reason:  working.Reason{Code: "open-question", Pointer: doubt.Pointer},
 				Doubt:   true,
@@ -144,25 +150,74 @@ func judged(c working.Check, rules []working.Rule) working.Check {
 	return c
 }
 
-func rule(verdict working.Verdict, reason string, broken ...*working.Condition) working.Rule {
-	return working.Rule{Broken: broken, Verdict: verdict, Reason: working.Reason{Code: reason}}
+// rule gives a verdict while a condition is broken; always, if it is nil.
+func rule(verdict working.Verdict, reason string, broken *working.Condition) working.Rule {
+	return both(verdict, reason, broken, nil)
 }
 
-// shown returns the steps of named terms in order; a nil term or one without a
-// formula of its own has none.
+// both gives a verdict while two conditions are broken.
+func both(verdict working.Verdict, reason string, first, second *working.Condition) working.Rule {
+	return working.Rule{Broken: [2]*working.Condition{first, second}, Verdict: verdict, Reason: working.Reason{Code: reason}}
+}
+
+// shown returns the steps of named terms in order, repeats left out; a nil term or
+// one without a formula of its own has none.
 func shown(terms ...*working.Term) []working.Step {
 	steps := make([]working.Step, 0, len(terms))
 	for _, t := range terms {
-		if t != nil && t.IsNamed() {
-			steps = append(steps, t.Step())
+		if t == nil || !t.IsNamed() {
+			continue
+		}
+		if step := t.Step(); !containsStep(steps, &step) {
+			steps = append(steps, step)
 		}
 	}
 	return steps
 }
 
-func valueOf(t *working.Term) *quantity.Exact { return new(t.Value()) }
+func containsStep(steps []working.Step, s *working.Step) bool {
+	for i := range steps {
+		if steps[i].Symbol == s.Symbol && steps[i].WithNumbers == s.WithNumbers {
+			return true
+		}
+	}
+	return false
+}
+
+// valueOf returns a term's value as a check states it.
+func (a *Array) valueOf(t *working.Term) *quantity.Exact { return a.terms.Sheet.Keep(t.Value()) }
+
+// rulesFor returns an empty list of rules with room for those of one check. It is
+// the same memory each time: a check is judged before the next one begins.
+func (a *Array) rulesFor() []working.Rule { return a.scratch[:0] }
 
 func aboutString(e *entry) working.About { return working.About{String: e.index} }
 
 // Wired returns how many strings entries there are.
 func (a *Array) Wired() int { return len(a.wired) }
+
+// cites are the clauses that checks print, made once.
+type cites struct {
+	ceiling, cold, methods, instructions, current, backFeed, marked []string
+}
+
+func (a *Array) newCites() cites {
+	b := a.Book
+	c := cites{
+		cold:         []string{b.ColdCoefficient.Cite},
+		methods:      []string{b.ColdCoefficient.Cite, b.ColdTable.Cite},
+		instructions: []string{b.Instructions.Cite},
+		current:      []string{b.CurrentFactor.Clause.Cite, b.Instructions.Cite},
+		backFeed:     []string{b.FuseRequired.Cite, b.FuseFactor.Clause.Cite, b.RatingsClause.Cite},
+		marked:       []string{b.MarkedIsc.Cite},
+	}
+	if a.byTable() {
+		c.cold = []string{b.ColdTable.Cite}
+	}
+	c.ceiling = append(c.ceiling, c.cold...)
+	if s, ok := b.Ceiling(a.Design.Site.Structure); ok {
+		c.ceiling = append(c.ceiling, s.Clause.Cite)
+	}
+	c.ceiling = append(c.ceiling, b.Instructions.Cite)
+	return c
+}

@@ -18,27 +18,27 @@ func (a *Array) backFeed(e *entry, t *Tracker) working.Check {
 	k := &a.terms.Inverters[t.inverter].Trackers[t.tracker]
 	sum, steps := a.backFeedSum(e, t)
 	check := working.Check{
-		ID: "back-feed", About: aboutString(e), Value: valueOf(sum), Unit: "A",
-		Cites: []string{a.Book.FuseRequired.Cite, a.Book.FuseFactor.Clause.Cite, a.Book.RatingsClause.Cite},
+		ID: "back-feed", About: aboutString(e), Value: a.valueOf(sum), Unit: "A",
+		Cites: a.cites.backFeed,
 	}
 	limit := v.terms.MaxSeriesFuse
 	least := working.Named("Ifuse,min", "A", working.Number(a.Book.FuseFactor.Value).Times(v.isc))
-	check.Steps = shownOnce(append(append([]*working.Term{v.isc, least}, steps...), sum)...)
+	check.Steps = shown(append(append([]*working.Term{v.isc, least}, steps...), sum)...)
 
-	var rules []working.Rule
+	rules := a.rulesFor()
 	if limit == nil {
 		rules = append(rules, rule(working.Unconfirmed, "series-fuse-not-stated", working.Exceeds(sum, working.Whole(0))))
 	} else {
-		check.Limit = valueOf(limit)
+		check.Limit = a.valueOf(limit)
 		required := working.Exceeds(sum, limit)
 		if k.StringFuse != nil {
 			rules = append(rules,
-				rule(working.Outside, "string-fuse-too-small", required, working.Exceeds(least, k.StringFuse)),
-				rule(working.Outside, "string-fuse-above-module", required, working.Exceeds(k.StringFuse, limit)))
+				both(working.Outside, "string-fuse-too-small", required, working.Exceeds(least, k.StringFuse)),
+				both(working.Outside, "string-fuse-above-module", required, working.Exceeds(k.StringFuse, limit)))
 		} else {
 			rules = append(rules,
 				rule(working.Unconfirmed, "fuse-required-none-stated", required),
-				rule(working.Outside, "no-standard-fuse", required, a.noRating(least, limit)))
+				both(working.Outside, "no-standard-fuse", required, a.noRating(least, limit)))
 		}
 	}
 	check = judged(check, a.trackerDoubts(rules, t, check.ID)) // it rests on the other strings' modules too
@@ -95,8 +95,8 @@ func (a *Array) noRating(least, most *working.Term) *working.Condition {
 // voltage. Where they do not, what each contributes and what flows backwards is not
 // known without their curves.
 func (a *Array) unequalStrings(t *Tracker) working.Check {
-	check := working.Check{ID: "unequal-strings", About: a.about(t), Unit: "V", Cites: []string{a.Book.Instructions.Cite}}
-	var rules []working.Rule
+	check := working.Check{ID: "unequal-strings", About: a.about(t), Unit: "V", Cites: a.cites.instructions}
+	rules := a.rulesFor()
 	first := t.entries[0]
 	highest, lowest := first, first
 	for _, e := range t.entries[1:] {
@@ -111,14 +111,12 @@ func (a *Array) unequalStrings(t *Tracker) working.Check {
 			rule(working.Unconfirmed, "strings-unequal", working.Exceeds(e.vocCold, first.vocCold)))
 	}
 	for i := range rules {
-		for _, c := range rules[i].Broken {
-			c.Without(a.terms.ColdestInput) // both sides move with it, by the table in steps
-		}
+		rules[i].Broken[0].Without(a.terms.ColdestInput) // both sides move with it, by the table in steps
 	}
 	if len(t.entries) > 1 {
 		high, low := highest.numberedCold(), lowest.numberedCold()
 		difference := working.Named("ΔVcold", "V", high.Minus(low))
-		check.Value, check.Limit = valueOf(difference), new(quantity.Int(0))
+		check.Value, check.Limit = a.valueOf(difference), new(quantity.Int(0))
 		check.Steps = shown(high, low, difference)
 	}
 	return judged(check, rules)

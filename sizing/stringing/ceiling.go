@@ -112,7 +112,7 @@ func (a *Array) reachedAt(v *plane, n, ceiling *working.Term) (*quantity.Exact, 
 	if t.Value().Less(coldestReported) {
 		return nil, t
 	}
-	return valueOf(t), t
+	return a.valueOf(t), t
 }
 
 // exceedsCold returns the condition that n modules exceed a limit on the coldest
@@ -132,7 +132,7 @@ func (a *Array) exceedsCold(v *plane, n, stringVoltage, limit *working.Term, byT
 func (a *Array) voltageCeiling(e *entry) working.Check {
 	v := &a.planes[e.plane]
 	entries, ceiling := a.ceiling(v, e.inverter)
-	var rules []working.Rule
+	rules := a.rulesFor()
 	for i := range entries {
 		rules = append(rules, rule(working.Outside, "", a.exceedsCold(v, e.terms.Series, e.vocCold, entries[i].term, a.byTable())))
 	}
@@ -140,26 +140,10 @@ func (a *Array) voltageCeiling(e *entry) working.Check {
 	reached, _ := a.reachedAt(v, e.terms.Series, ceiling)
 	return judged(working.Check{
 		ID: "voltage-ceiling", About: aboutString(e),
-		Value: valueOf(e.vocCold), Limit: valueOf(ceiling), Unit: "V", ReachedAtC: reached,
-		Cites: a.ceilingCites(a.coldCite()),
+		Value: a.valueOf(e.vocCold), Limit: a.valueOf(ceiling), Unit: "V", ReachedAtC: reached,
+		Cites: a.cites.ceiling,
 		Steps: shown(append(append([]*working.Term{ceiling}, v.coldSteps...), e.vocCold)...),
 	}, rules)
-}
-
-func (a *Array) coldCite() string {
-	if a.byTable() {
-		return a.Book.ColdTable.Cite
-	}
-	return a.Book.ColdCoefficient.Cite
-}
-
-// ceilingCites adds the clauses of the ceiling to that of a method.
-func (a *Array) ceilingCites(method string) []string {
-	cites := []string{method}
-	if c, ok := a.Book.Ceiling(a.Design.Site.Structure); ok {
-		cites = append(cites, c.Clause.Cite)
-	}
-	return append(cites, a.Book.Instructions.Cite)
 }
 
 // headroom judges how far the temperature at which the ceiling would be met lies
@@ -171,15 +155,15 @@ func (a *Array) headroom(e *entry) working.Check {
 	entries, ceiling := a.ceiling(v, e.inverter)
 	reached, at := a.reachedAt(v, n, ceiling)
 	check := working.Check{
-		ID: "headroom", About: aboutString(e), Limit: valueOf(a.terms.Headroom), Unit: "°C", ReachedAtC: reached,
-		Cites: []string{a.coldCite()},
+		ID: "headroom", About: aboutString(e), Limit: a.valueOf(a.terms.Headroom), Unit: "°C", ReachedAtC: reached,
+		Cites: a.cites.cold,
 	}
 	if at != nil {
 		gap := working.Named("headroom", "°C", a.terms.Coldest.Minus(at))
-		check.Value = valueOf(gap)
+		check.Value = a.valueOf(gap)
 		check.Steps = shown(ceiling, a.terms.Coldest, at, gap)
 	}
-	var rules []working.Rule
+	rules := a.rulesFor()
 	for i := range entries {
 		rules = append(rules, rule(working.Caution, "", a.lacksHeadroom(v, n, entries[i].term)))
 	}
@@ -210,9 +194,9 @@ func (a *Array) lacksHeadroom(v *plane, n, limit *working.Term) *working.Conditi
 func (a *Array) methodDifference(e *entry) working.Check {
 	v := &a.planes[e.plane]
 	entries, ceiling := a.ceiling(v, e.inverter)
-	check := working.Check{ID: "method-difference", About: aboutString(e), Limit: valueOf(ceiling), Unit: "V",
-		Cites: []string{a.Book.ColdCoefficient.Cite, a.Book.ColdTable.Cite}}
-	var rules []working.Rule
+	check := working.Check{ID: "method-difference", About: aboutString(e), Limit: a.valueOf(ceiling), Unit: "V",
+		Cites: a.cites.methods}
+	rules := a.rulesFor()
 	if v.other == nil {
 		check.Limit = nil
 		check = judged(check, a.doubtRules(nil, e.plane, check.ID))
@@ -225,9 +209,9 @@ func (a *Array) methodDifference(e *entry) working.Check {
 	higher := working.Exceeds(other, e.vocCold).Without(a.terms.ColdestInput)
 	for i := range entries {
 		breaks := a.exceedsCold(v, e.terms.Series, other, entries[i].term, !a.byTable()).Without(a.terms.ColdestInput)
-		rules = append(rules, rule(working.Caution, "other-method-higher", higher, breaks))
+		rules = append(rules, both(working.Caution, "other-method-higher", higher, breaks))
 	}
-	check.Value = valueOf(other)
+	check.Value = a.valueOf(other)
 	check.Steps = shown(append(append([]*working.Term{ceiling}, v.otherMore...), other)...)
 	return judged(check, a.doubtRules(rules, e.plane, check.ID))
 }
@@ -241,16 +225,16 @@ var (
 // coldValidity judges whether the cold voltage was found inside the methods' limits of validity.
 func (a *Array) coldValidity(e *entry) working.Check {
 	v := &a.planes[e.plane]
-	var rules []working.Rule
+	rules := a.rulesFor()
 	if !v.datasheet.CrystallineSilicon() {
-		rules = append(rules, rule(working.Caution, "thin-film"))
+		rules = append(rules, rule(working.Caution, "thin-film", nil))
 	}
 	if a.terms.Elevation != nil {
 		rules = append(rules, rule(working.Caution, "elevation-above-2000-m", working.Exceeds(a.terms.Elevation, working.Number(highSiteM))))
 	}
 	if a.Design.Site.ColdestBasis == "other" {
-		rules = append(rules, rule(working.Caution, "basis-other"))
+		rules = append(rules, rule(working.Caution, "basis-other", nil))
 	}
 	rules = append(rules, rule(working.Caution, "colder-than-minus-40", working.Exceeds(working.Number(coldestValidC), a.terms.Coldest)))
-	return judged(working.Check{ID: "cold-validity", About: aboutString(e), Cites: []string{a.coldCite()}}, rules)
+	return judged(working.Check{ID: "cold-validity", About: aboutString(e), Cites: a.cites.cold}, rules)
 }

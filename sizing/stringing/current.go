@@ -94,37 +94,17 @@ func operatingOf(v *plane) *working.Term { return v.imp }
 func (a *Array) operatingCurrent(t *Tracker) working.Check {
 	k := &a.terms.Inverters[t.inverter].Trackers[t.tracker]
 	total, steps := a.sum(t, "Imp", "ΣImp", operatingOf, operatingOf)
-	rules := []working.Rule{rule(working.Caution, "", working.Exceeds(total, k.MaxInput))}
+	rules := append(a.rulesFor(), rule(working.Caution, "", working.Exceeds(total, k.MaxInput)))
 	if k.MaxInputPerInput != nil {
 		for _, e := range t.entries {
 			rules = append(rules, rule(working.Caution, "per-input-limit", working.Exceeds(a.planes[e.plane].imp, k.MaxInputPerInput)))
 		}
 	}
 	return judged(working.Check{
-		ID: "operating-current", About: a.about(t), Value: valueOf(total), Limit: valueOf(k.MaxInput), Unit: "A",
-		Cites: []string{a.Book.Instructions.Cite},
-		Steps: shownOnce(append(steps, total)...),
+		ID: "operating-current", About: a.about(t), Value: a.valueOf(total), Limit: a.valueOf(k.MaxInput), Unit: "A",
+		Cites: a.cites.instructions,
+		Steps: shown(append(steps, total)...),
 	}, a.trackerDoubts(rules, t, "operating-current"))
-}
-
-// shownOnce returns the steps of the terms, leaving out repeats.
-func shownOnce(terms ...*working.Term) []working.Step {
-	var steps []working.Step
-	for _, s := range shown(terms...) {
-		if !containsStep(steps, s) {
-			steps = append(steps, s)
-		}
-	}
-	return steps
-}
-
-func containsStep(steps []working.Step, s working.Step) bool {
-	for i := range steps {
-		if steps[i].Symbol == s.Symbol && steps[i].WithNumbers == s.WithNumbers {
-			return true
-		}
-	}
-	return false
 }
 
 func (a *Array) trackerDoubts(rules []working.Rule, t *Tracker, check string) []working.Rule {
@@ -155,20 +135,20 @@ func (a *Array) shortCircuit(t *Tracker) working.Check {
 	k := &a.terms.Inverters[t.inverter].Trackers[t.tracker]
 	total, steps := a.sum(t, "Isc", "ΣIsc", shortCircuitOf, a.shortCircuitEach)
 	check := working.Check{
-		ID: "short-circuit", About: a.about(t), Value: valueOf(total), Unit: "A",
-		Cites: []string{a.Book.CurrentFactor.Clause.Cite, a.Book.Instructions.Cite},
-		Steps: shownOnce(append(steps, total)...),
+		ID: "short-circuit", About: a.about(t), Value: a.valueOf(total), Unit: "A",
+		Cites: a.cites.current,
+		Steps: shown(append(steps, total)...),
 	}
-	var rules []working.Rule
+	rules := a.rulesFor()
 	if k.MaxShortCircuit == nil {
-		rules = append(rules, rule(working.Unconfirmed, "short-circuit-limit-not-stated"))
+		rules = append(rules, rule(working.Unconfirmed, "short-circuit-limit-not-stated", nil))
 	} else {
-		check.Limit = valueOf(k.MaxShortCircuit)
+		check.Limit = a.valueOf(k.MaxShortCircuit)
 		rules = append(rules, rule(working.Outside, "", working.Exceeds(total, k.MaxShortCircuit)))
 		if a.ratedBasis() {
 			maximum, more := a.sum(t, "Imax", "ΣImax", shortCircuitOf, a.maximumEach)
 			rules = append(rules, rule(working.Caution, "rated-basis", working.Exceeds(maximum, k.MaxShortCircuit)))
-			check.Steps = shownOnce(append(append(append(more, maximum), steps...), total)...)
+			check.Steps = shown(append(append(append(more, maximum), steps...), total)...)
 		}
 	}
 	if k.MaxShortCircuitPerInput != nil {
@@ -191,7 +171,7 @@ func (a *Array) currentBasis(t *Tracker) working.Check {
 	if a.Book.HighestMarkedIsc {
 		worst = working.Unconfirmed
 	}
-	var rules []working.Rule
+	rules := a.rulesFor()
 	for _, e := range t.entries {
 		v := &a.planes[e.plane]
 		gain := a.terms.Planes[e.plane].Gain
@@ -200,5 +180,5 @@ func (a *Array) currentBasis(t *Tracker) working.Check {
 			rules = append(rules, working.Rule{Verdict: worst, Reason: working.Reason{Code: "gain-not-stated", Pointer: v.terms.Pointer("bifaciality")}})
 		}
 	}
-	return judged(working.Check{ID: "current-basis", About: a.about(t), Cites: []string{a.Book.MarkedIsc.Cite}}, rules)
+	return judged(working.Check{ID: "current-basis", About: a.about(t), Cites: a.cites.marked}, rules)
 }

@@ -15,8 +15,8 @@ func (a *Array) inputs(t *Tracker) working.Check {
 	k := &a.terms.Inverters[t.inverter].Trackers[t.tracker]
 	strings, lines := total("s", "", t.entries, func(e *entry) *working.Term { return e.terms.Parallel })
 	return judged(working.Check{
-		ID: "inputs", About: a.about(t), Value: valueOf(strings), Limit: valueOf(k.Inputs),
-		Cites: []string{a.Book.Instructions.Cite}, Steps: shown(lines...),
+		ID: "inputs", About: a.about(t), Value: a.valueOf(strings), Limit: a.valueOf(k.Inputs),
+		Cites: a.cites.instructions, Steps: shown(lines...),
 	}, []working.Rule{rule(working.Outside, "", working.Exceeds(strings, k.Inputs))})
 }
 
@@ -49,7 +49,7 @@ func total(symbol, unit string, entries []*entry, of func(*entry) *working.Term)
 // azimuth. Equal strings of different planes in parallel lose little, since their
 // voltages stay close; someone must still decide.
 func (a *Array) planesMixed(t *Tracker) working.Check {
-	var rules []working.Rule
+	rules := a.rulesFor()
 	first := t.entries[0].plane
 	p := &a.Design.Planes[first]
 	for _, e := range t.entries[1:] {
@@ -59,12 +59,12 @@ func (a *Array) planesMixed(t *Tracker) working.Check {
 		q := &a.Design.Planes[e.plane]
 		switch {
 		case p.TiltDeg == nil || p.AzimuthDeg == nil || q.TiltDeg == nil || q.AzimuthDeg == nil:
-			rules = append(rules, rule(working.Unconfirmed, "angle-not-stated"))
+			rules = append(rules, rule(working.Unconfirmed, "angle-not-stated", nil))
 		case !p.TiltDeg.Equal(*q.TiltDeg) || !sameAzimuth(*p.AzimuthDeg, *q.AzimuthDeg):
-			rules = append(rules, rule(working.Caution, "planes-differ"))
+			rules = append(rules, rule(working.Caution, "planes-differ", nil))
 		}
 	}
-	return judged(working.Check{ID: "planes-mixed", About: a.about(t), Cites: []string{a.Book.Instructions.Cite}}, rules)
+	return judged(working.Check{ID: "planes-mixed", About: a.about(t), Cites: a.cites.instructions}, rules)
 }
 
 // sameAzimuth reports whether two azimuths are one direction: 0° and 360° are.
@@ -85,7 +85,7 @@ func (a *Array) Places(plane int) working.Check {
 	left := working.Named("left over", "", positions.Minus(modules))
 	check := judged(working.Check{
 		ID: "places", About: working.About{String: -1, Plane: a.Design.Planes[plane].ID},
-		Value: valueOf(modules), Limit: valueOf(positions), Steps: shown(append([]*working.Term{left}, lines...)...),
+		Value: a.valueOf(modules), Limit: a.valueOf(positions), Steps: shown(append([]*working.Term{left}, lines...)...),
 	}, []working.Rule{rule(working.Outside, "", working.Exceeds(modules, positions))})
 	if left.Value().Sign() > 0 {
 		check.Reasons = append(check.Reasons, working.Reason{Code: "places-left-over"})
@@ -131,11 +131,11 @@ func (a *Array) DCPower(u *Unit) (check working.Check, ok bool) {
 	power, lines := total("P", "W", u.entries, func(e *entry) *working.Term {
 		return a.planes[e.plane].terms.Pmax.Times(e.terms.Series).Times(e.terms.Parallel)
 	})
-	rules := []working.Rule{rule(broken, "", working.Exceeds(power, limit))}
+	rules := append(a.rulesFor(), rule(broken, "", working.Exceeds(power, limit)))
 	rules = a.trackerDoubts(rules, &Tracker{entries: u.entries}, "dc-power")
 	return judged(working.Check{
 		ID: "dc-power", About: working.About{String: -1, Inverter: v.ID, Unit: u.unit},
-		Value: valueOf(power), Limit: valueOf(limit), Unit: "W",
-		Cites: []string{a.Book.Instructions.Cite}, Steps: shown(lines...),
+		Value: a.valueOf(power), Limit: a.valueOf(limit), Unit: "W",
+		Cites: a.cites.instructions, Steps: shown(lines...),
 	}, rules), true
 }

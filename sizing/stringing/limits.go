@@ -46,7 +46,7 @@ func (a *Array) Limit(plane, inverter, tracker int) Limit {
 		ModuleVocColdV: v.vocCold.Value(), ModuleVmpHotV: v.vmpHot.Value(),
 		MaxModules: mostWithin(v.vocCold.Value(), ceiling.Value()),
 		MinModules: fewestReaching(v.vmpHot.Value(), k.MPPTMin.Value()),
-		Cites:      a.ceilingCites(a.coldCite()),
+		Cites:      a.cites.ceiling,
 	}
 	for _, e := range entries {
 		if e.Governs {

@@ -30,7 +30,7 @@ func (a *Array) reaches(id string, e *entry, minimum *working.Term, broken worki
 	v, n := &a.planes[e.plane], e.terms.Series
 	hot := a.operatingString(e)
 	terms := a.hotSteps(v)
-	rules := []working.Rule{rule(broken, "", v.heldHot.below(minimum, n))}
+	rules := append(a.rulesFor(), rule(broken, "", v.heldHot.below(minimum, n)))
 	if v.slope.standIn {
 		rules = append(rules, rule(working.Caution, "stand-in-coefficient", v.heldSteeper.below(minimum, n)))
 		if quantity.Int(25).Less(v.cellHot.Value()) { // at 25 °C and below it is not the lower of the two
@@ -38,8 +38,8 @@ func (a *Array) reaches(id string, e *entry, minimum *working.Term, broken worki
 		}
 	}
 	return judged(working.Check{
-		ID: id, About: aboutString(e), Value: valueOf(hot), Limit: valueOf(minimum), Unit: "V",
-		Cites: []string{a.Book.Instructions.Cite},
+		ID: id, About: aboutString(e), Value: a.valueOf(hot), Limit: a.valueOf(minimum), Unit: "V",
+		Cites: a.cites.instructions,
 		Steps: shown(append(terms, hot)...),
 	}, a.doubtRules(rules, e.plane, id))
 }
@@ -59,8 +59,8 @@ func (a *Array) start(e *entry) working.Check {
 		rule(working.Caution, "start-at-first-light", working.Exceeds(minimum, working.Number(startShare).Times(voltage))),
 	}
 	return judged(working.Check{
-		ID: "start", About: aboutString(e), Value: valueOf(voltage), Limit: valueOf(minimum), Unit: "V",
-		Cites: []string{a.Book.Instructions.Cite},
+		ID: "start", About: aboutString(e), Value: a.valueOf(voltage), Limit: a.valueOf(minimum), Unit: "V",
+		Cites: a.cites.instructions,
 		Steps: shown(a.terms.Hottest, a.terms.Planes[e.plane].Rise, v.cellHot, v.vocHot, voltage),
 	}, a.doubtRules(rules, e.plane, "start"))
 }
@@ -81,10 +81,10 @@ func (a *Array) staysBelow(id string, e *entry, maximum *working.Term) working.C
 	v := &a.planes[e.plane]
 	n := e.terms.Series
 	cold := working.Named("Vmp,cold,string", "V", n.Times(v.vmpCold))
-	rules := []working.Rule{rule(working.Caution, "", v.heldCold.exceeds(n, maximum))}
+	rules := append(a.rulesFor(), rule(working.Caution, "", v.heldCold.exceeds(n, maximum)))
 	return judged(working.Check{
-		ID: id, About: aboutString(e), Value: valueOf(cold), Limit: valueOf(maximum), Unit: "V",
-		Cites: []string{a.Book.Instructions.Cite},
+		ID: id, About: aboutString(e), Value: a.valueOf(cold), Limit: a.valueOf(maximum), Unit: "V",
+		Cites: a.cites.instructions,
 		Steps: shown(a.terms.Coldest, v.vmpCold, cold),
 	}, a.doubtRules(rules, e.plane, id))
 }

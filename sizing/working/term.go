@@ -1,6 +1,10 @@
 package working
 
-import "rimeline/sizing/quantity"
+import (
+	"cmp"
+
+	"rimeline/sizing/quantity"
+)
 
 type op uint8
 
@@ -41,7 +45,8 @@ type Term struct {
 	value  quantity.Exact
 	symbol string // of an input or a named result; the text of a number
 	unit   string
-	step   *Step // memo of a named result's line
+	step   *Step  // memo of a named result's line
+	sheet  *Sheet // what it is written on; nil for a constant
 }
 
 // Value returns the term's value.
@@ -73,20 +78,28 @@ func Looked(symbol string, x quantity.Exact) *Term {
 	return &Term{op: opNumber, value: x, symbol: symbol}
 }
 
-// Of returns a term for an input of the document.
-func Of(symbol, unit string, in *Input) *Term {
-	return &Term{op: opInput, rests: true, input: in, value: in.Now, symbol: symbol, unit: unit}
+// Of returns a term for an input of the document, on this sheet; so are all
+// formulas that it stands in.
+func (s *Sheet) Of(symbol, unit string, in *Input) *Term {
+	t := s.term()
+	*t = Term{op: opInput, rests: true, input: in, value: in.Now, symbol: symbol, unit: unit, sheet: s}
+	return t
 }
 
 // Named gives a formula a name. Where the named result is used, its expression
 // shows the name and its numbers show the value; a value without a finite decimal
 // shows as the sum it comes from, so that no printed line is off by a rounding.
 func Named(symbol, unit string, formula *Term) *Term {
-	return &Term{op: opNamed, rests: formula.rests, forks: formula.forks, a: formula, value: formula.value, symbol: symbol, unit: unit}
+	t := formula.sheet.term()
+	*t = Term{op: opNamed, rests: formula.rests, forks: formula.forks, a: formula, value: formula.value, symbol: symbol, unit: unit, sheet: formula.sheet}
+	return t
 }
 
 func node(o op, a, b *Term, value quantity.Exact) *Term {
-	return &Term{op: o, rests: a.rests || b.rests, forks: a.forks || b.forks, a: a, b: b, value: value}
+	sheet := cmp.Or(a.sheet, b.sheet)
+	t := sheet.term()
+	*t = Term{op: o, rests: a.rests || b.rests, forks: a.forks || b.forks, a: a, b: b, value: value, sheet: sheet}
+	return t
 }
 
 // Plus returns t + u.
@@ -117,10 +130,10 @@ func MinOf(t, u *Term) *Term {
 }
 
 // FloorOf returns the greatest whole number that is not above t.
-func FloorOf(t *Term) *Term { return &Term{op: opFloor, a: t, value: t.value.Floor()} }
+func FloorOf(t *Term) *Term { return &Term{op: opFloor, a: t, value: t.value.Floor(), sheet: t.sheet} }
 
 // CeilOf returns the least whole number that is not below t.
-func CeilOf(t *Term) *Term { return &Term{op: opCeil, a: t, value: t.value.Ceil()} }
+func CeilOf(t *Term) *Term { return &Term{op: opCeil, a: t, value: t.value.Ceil(), sheet: t.sheet} }
 
 // Step returns the line of work that shows a named term.
 func (t *Term) Step() Step {
@@ -129,10 +142,10 @@ func (t *Term) Step() Step {
 	}
 	if t.step == nil {
 		var buf [192]byte
-		t.step = &Step{Symbol: t.symbol, Value: t.value, Unit: t.unit}
-		// Two statements: a conversion to string may otherwise wait until buf is written again.
-		t.step.Expression = string(t.a.appendExpression(buf[:0]))
-		t.step.WithNumbers = string(t.a.appendNumbers(buf[:0]))
+		t.step = t.sheet.step()
+		*t.step = Step{Symbol: t.symbol, Value: t.value, Unit: t.unit}
+		t.step.Expression = t.sheet.keep(t.a.appendExpression(buf[:0]))
+		t.step.WithNumbers = t.sheet.keep(t.a.appendNumbers(buf[:0]))
 	}
 	return *t.step
 }

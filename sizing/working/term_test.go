@@ -18,12 +18,12 @@ func number(s string) quantity.Exact {
 
 // Printed lines, worked by hand.
 func TestStep(t *testing.T) {
-	voc := Of("Voc", "V", input("/voc", "37.32"))
-	beta := Of("β", "%/°C", input("/beta", "-0.27"))
-	cold := Of("Tcold", "°C", input("/cold", "-21"))
-	fahrenheit := Of("T,F", "°F", input("/cold", "7"))
+	voc := new(Sheet).Of("Voc", "V", input("/voc", "37.32"))
+	beta := new(Sheet).Of("β", "%/°C", input("/beta", "-0.27"))
+	cold := new(Sheet).Of("Tcold", "°C", input("/cold", "-21"))
+	fahrenheit := new(Sheet).Of("T,F", "°F", input("/cold", "7"))
 	celsius := Named("T", "°C", fahrenheit.Minus(Whole(32)).Times(Whole(5)).Over(Whole(9)))
-	fifth := Named("T", "°C", Of("T,F", "°F", input("/cold", "5")).Minus(Whole(32)).Times(Whole(5)).Over(Whole(9)))
+	fifth := Named("T", "°C", new(Sheet).Of("T,F", "°F", input("/cold", "5")).Minus(Whole(32)).Times(Whole(5)).Over(Whole(9)))
 	five, three := Whole(5), Whole(3)
 	third := Named("q", "", Whole(1).Over(three))
 
@@ -65,10 +65,10 @@ func TestJudge(t *testing.T) {
 	}{
 		{"no rule", nil, Within},
 		{"a rule without conditions always holds", []Rule{{Verdict: Unconfirmed}}, Unconfirmed},
-		{"kept", []Rule{{Broken: []*Condition{no}, Verdict: Outside}}, Within},
-		{"broken", []Rule{{Broken: []*Condition{yes}, Verdict: Outside}}, Outside},
-		{"one of two", []Rule{{Broken: []*Condition{yes, no}, Verdict: Outside}}, Within},
-		{"the worst counts", []Rule{{Broken: []*Condition{yes}, Verdict: Caution}, {Verdict: Unconfirmed}}, Unconfirmed},
+		{"kept", []Rule{{Broken: [2]*Condition{no}, Verdict: Outside}}, Within},
+		{"broken", []Rule{{Broken: [2]*Condition{yes}, Verdict: Outside}}, Outside},
+		{"one of two", []Rule{{Broken: [2]*Condition{yes, no}, Verdict: Outside}}, Within},
+		{"the worst counts", []Rule{{Broken: [2]*Condition{yes}, Verdict: Caution}, {Verdict: Unconfirmed}}, Unconfirmed},
 	}
 	for _, c := range cases {
 		if got, _ := Judge(c.rules); got != c.want {
@@ -100,36 +100,36 @@ func TestTurns(t *testing.T) {
 	cold := input("/cold", "-15")
 	cold.Low = new(number("-90"))
 	limit := input("/limit", "1000")
-	string12 := Of("n", "", n).Times(Of("Voc", "V", voc)).Times(Whole(1).Plus(Of("β", "", beta).Over(Whole(100)).Times(Of("T", "°C", cold).Minus(Whole(25)))))
-	over := Exceeds(string12, Of("limit", "V", limit))
+	string12 := new(Sheet).Of("n", "", n).Times(new(Sheet).Of("Voc", "V", voc)).Times(Whole(1).Plus(new(Sheet).Of("β", "", beta).Over(Whole(100)).Times(new(Sheet).Of("T", "°C", cold).Minus(Whole(25)))))
+	over := Exceeds(string12, new(Sheet).Of("limit", "V", limit))
 
 	// Voc above 60 V is doubtful: nearer than the limit, and it turns to another verdict.
-	doubt := Exceeds(Of("Voc", "V", voc), Whole(60))
+	doubt := Exceeds(new(Sheet).Of("Voc", "V", voc), Whole(60))
 	marked, gained := input("/marked", "11"), input("/isc", "10")
-	greater := MaxOf(Of("Isc", "A", gained), Of("marked", "A", marked))
+	greater := MaxOf(new(Sheet).Of("Isc", "A", gained), new(Sheet).Of("marked", "A", marked))
 
 	cases := []struct {
 		name  string
 		rules []Rule
 		want  map[string]string
 	}{
-		{"one condition", []Rule{{Broken: []*Condition{over}, Verdict: Outside}}, map[string]string{
+		{"one condition", []Rule{{Broken: [2]*Condition{over}, Verdict: Outside}}, map[string]string{
 			"/n":     "23",             // 22 × 44 = 968, 23 × 44 = 1012
 			"/voc":   "75.7575757576",  // 1000 ÷ 12 ÷ 1.1
 			"/beta":  "-2.70833333333", // (1000 ÷ 480 − 1) × 100 ÷ (−40)
 			"/limit": "528",
 			// T = 25 + (1000 ÷ 480 − 1) × 100 ÷ (−0.25) is −408.3 °C, colder than any site
 		}},
-		{"a doubt comes first", []Rule{{Broken: []*Condition{over}, Verdict: Outside}, {Broken: []*Condition{doubt}, Verdict: Unconfirmed, Doubt: true}},
+		{"a doubt comes first", []Rule{{Broken: [2]*Condition{over}, Verdict: Outside}, {Broken: [2]*Condition{doubt}, Verdict: Unconfirmed, Doubt: true}},
 			map[string]string{"/n": "23", "/voc": "60", "/beta": "-2.70833333333", "/limit": "528"}},
-		{"hidden behind what is worse", []Rule{{Broken: []*Condition{over}, Verdict: Caution}, {Verdict: Unconfirmed}}, map[string]string{}},
-		{"the greater of two", []Rule{{Broken: []*Condition{Exceeds(greater, Whole(15))}, Verdict: Outside}},
+		{"hidden behind what is worse", []Rule{{Broken: [2]*Condition{over}, Verdict: Caution}, {Verdict: Unconfirmed}}, map[string]string{}},
+		{"the greater of two", []Rule{{Broken: [2]*Condition{Exceeds(greater, Whole(15))}, Verdict: Outside}},
 			map[string]string{"/isc": "15", "/marked": "15"}},
-		{"the lower of two cannot turn what the greater breaks", []Rule{{Broken: []*Condition{Exceeds(greater, number5())}, Verdict: Outside}},
+		{"the lower of two cannot turn what the greater breaks", []Rule{{Broken: [2]*Condition{Exceeds(greater, number5())}, Verdict: Outside}},
 			map[string]string{}},
-		{"the greater alone breaks", []Rule{{Broken: []*Condition{Exceeds(greater, Number(number("10.5")))}, Verdict: Outside}},
+		{"the greater alone breaks", []Rule{{Broken: [2]*Condition{Exceeds(greater, Number(number("10.5")))}, Verdict: Outside}},
 			map[string]string{"/marked": "10.5"}},
-		{"all of several", []Rule{{Broken: []*Condition{over, Known(true)}, Verdict: Caution}}, map[string]string{
+		{"all of several", []Rule{{Broken: [2]*Condition{over, Known(true)}, Verdict: Caution}}, map[string]string{
 			"/n": "23", "/voc": "75.7575757576", "/beta": "-2.70833333333", "/limit": "528"}},
 	}
 	for _, c := range cases {

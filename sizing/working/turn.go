@@ -1,6 +1,7 @@
 package working
 
 import (
+	"cmp"
 	"slices"
 
 	"rimeline/sizing/quantity"
@@ -13,6 +14,7 @@ type Condition struct {
 	broken      bool
 	solved      bool
 	roots       []root
+	sheet       *Sheet
 }
 
 // root is a value of one input at which a condition changes between broken and not.
@@ -24,7 +26,10 @@ type root struct {
 
 // Exceeds returns the condition that is broken while left > right.
 func Exceeds(left, right *Term) *Condition {
-	return &Condition{left: left, right: right, broken: right.value.Less(left.value)}
+	sheet := cmp.Or(left.sheet, right.sheet)
+	c := sheet.condition()
+	*c = Condition{left: left, right: right, broken: right.value.Less(left.value), sheet: sheet}
+	return c
 }
 
 // Known returns a condition whose state was found otherwise, such as by looking
@@ -83,7 +88,7 @@ func (c *Condition) solve() {
 	slopes := gather(buf[:0], c.left, quantity.Int(1))
 	slopes = gather(slopes, c.right, quantity.Int(-1))
 	gap := c.left.value.Sub(c.right.value)
-	c.roots = make([]root, 0, len(slopes))
+	c.roots = c.sheet.rootsFor(len(slopes))
 	for _, s := range slopes {
 		if sign := s.by.Sign(); sign != 0 {
 			c.roots = append(c.roots, root{s.input, s.input.Now.Sub(gap.Quo(s.by)), sign > 0})
@@ -257,10 +262,10 @@ func forkBreaks(breaks []quantity.Exact, t *Term, in *Input) []quantity.Exact {
 	return breaks
 }
 
-// Rule gives a verdict while all of its conditions are broken; without conditions
-// it always does.
+// Rule gives a verdict while both of its conditions are broken, or the one it has;
+// without conditions it always does.
 type Rule struct {
-	Broken  []*Condition
+	Broken  [2]*Condition // nil for none
 	Verdict Verdict
 	Reason  Reason // Code "" where the value says it all
 
@@ -289,6 +294,9 @@ func Judge(rules []Rule) (Verdict, []Reason) {
 // holds reports whether the rule holds with some conditions flipped.
 func (r *Rule) holds(flipped []*Condition) bool {
 	for _, c := range r.Broken {
+		if c == nil {
+			continue
+		}
 		state := c.broken
 		for _, f := range flipped {
 			if f == c {
@@ -325,12 +333,16 @@ func Turns(rules []Rule) []Turn {
 	var seen [24]*Input
 	inputs := seen[:0]
 	now := verdictWith(rules, nil)
-	var turns []Turn
+	var found [16]Turn
+	turns := found[:0]
 	for i := range rules {
 		if rules[i].Doubt {
 			continue
 		}
 		for _, c := range rules[i].Broken {
+			if c == nil {
+				continue
+			}
 			c.solve()
 			for k := range c.roots {
 				in := c.roots[k].input
@@ -339,22 +351,19 @@ func Turns(rules []Rule) []Turn {
 				}
 				inputs = append(inputs, in)
 				if at, to := nearestTurn(rules, in, now); to != now {
-					if turns == nil {
-						turns = make([]Turn, 0, 8)
-					}
-					turns = append(turns, Turn{in.Pointer, at, changePct(in.Now, at), to})
+					turns = append(turns, Turn{in.Pointer, at, c.sheet.changePct(in.Now, at), to})
 				}
 			}
 		}
 	}
-	return turns
+	return slices.Clone(turns)
 }
 
-func changePct(now, at quantity.Exact) *quantity.Exact {
+func (s *Sheet) changePct(now, at quantity.Exact) *quantity.Exact {
 	if now.IsZero() {
 		return nil
 	}
-	return new(at.Sub(now).Quo(now).Mul(quantity.Int(100)))
+	return s.Keep(at.Sub(now).Quo(now).Mul(quantity.Int(100)))
 }
 
 // nearestTurn returns the value of an input nearest to now at which the verdict
@@ -364,7 +373,7 @@ func nearestTurn(rules []Rule, in *Input, now Verdict) (at quantity.Exact, to Ve
 	above, below := aboveBuf[:0], belowBuf[:0]
 	for i := range rules {
 		for _, c := range rules[i].Broken {
-			if containsCondition(above, c) || containsCondition(below, c) {
+			if c == nil || containsCondition(above, c) || containsCondition(below, c) {
 				continue
 			}
 			c.solve()
