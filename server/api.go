@@ -29,7 +29,8 @@ func (s *Server) apiSize(w http.ResponseWriter, r *http.Request) error {
 		})
 		return nil
 	}
-	body := append(sizing.Size(doc.Design).AppendJSON(nil), '\n')
+	body := make([]byte, 0, 64<<10) // most results fit
+	body = append(sizing.Size(doc.Design).AppendJSON(body), '\n')
 	w.Header().Set("Content-Type", "application/json")
 	w.Header().Set("Cache-Control", "no-store")
 	w.Header().Set("Content-Length", strconv.Itoa(len(body)))

