@@ -148,18 +148,12 @@ const SignificantDigits = 12
 // AppendJSON appends x as a JSON number: a finite decimal in full, any other
 // number rounded to [SignificantDigits], halves away from zero.
 func (x Exact) AppendJSON(dst []byte) []byte {
-	if x.big == nil {
-		// A denominator of twos and fives needs no reducing: the zeros that it brings are cut off the end.
-		if places, finite := smallPlaces(x.d()); finite && places < len(pow10) {
-			if n, ok := mul64(x.num, pow10[places]); ok {
-				n /= x.d()
-				for places > 0 && n%10 == 0 {
-					n /= 10
-					places--
-				}
-				return appendPlaced(dst, n < 0, abs64(n), places)
-			}
-		}
+	if short, ok := x.appendFinite(dst); ok {
+		return short
+	}
+	x = x.reduced()
+	if short, ok := x.appendFinite(dst); ok {
+		return short
 	}
 	places, finite := x.Decimal()
 	if !finite {
@@ -175,6 +169,29 @@ func (x Exact) AppendJSON(dst []byte) []byte {
 		return append(dst[:start], bytes.TrimSuffix(bytes.TrimRight(dst[start:], "0"), []byte("."))...)
 	}
 	return dst
+}
+
+// appendFinite appends a small number whose denominator has no factors but twos and
+// fives; ok is false where it has others or takes more than a machine word. The
+// fraction need not be reduced: the zeros that it brings are cut off the end.
+func (x Exact) appendFinite(dst []byte) (short []byte, ok bool) {
+	if x.big != nil {
+		return dst, false
+	}
+	places, finite := smallPlaces(x.d())
+	if !finite || places >= len(pow10) {
+		return dst, false
+	}
+	n, ok := mul64(x.num, pow10[places])
+	if !ok {
+		return dst, false
+	}
+	n /= x.d()
+	for places > 0 && n%10 == 0 {
+		n /= 10
+		places--
+	}
+	return appendPlaced(dst, n < 0, abs64(n), places), true
 }
 
 // String returns the text of [Exact.AppendJSON].
