@@ -89,7 +89,7 @@ func TestReadAlone_Refused(t *testing.T) {
 		{"a list", "[]", readModule, []string{""}},
 		{"an id", with(module, "id", `"m1"`), readModule, []string{"/id"}},
 		{"an id of an inverter", with(inverter, "id", `"i1"`), readInverter, []string{"/id"}},
-		{"Voc below Vmp", with(module, "voc_v", "3"), readModule, []string{"/voc_v"}},
+		{"Voc below Vmp", with(module, "voc_v", "30"), readModule, []string{"/voc_v"}},
 		{"no Voc", with(module, "voc_v", ""), readModule, []string{"/voc_v"}},
 		{"an inverter for a module", with(inverter, "", ""), readModule, nil},
 		{"no trackers", with(inverter, "trackers", ""), readInverter, []string{"/trackers"}},
