@@ -343,7 +343,7 @@ func (d draw) inverter(id string) object {
 // wire adds strings entries, of lengths near those that fit; in a sound design one
 // to a tracker.
 func (d draw) wire(doc object, o *oracleDesign) {
-	n := 1 + d.few(6)
+	n := 1 + d.few(4)
 	if d.chance(0.03) {
 		n = 12
 	}
