@@ -30,6 +30,7 @@ const patience = 2 * time.Minute
 // cluster is the PostgreSQL of this test program. It does not wait for the disk, which
 // is memory where the system has that.
 type cluster struct {
+	dir    *scratch // kept, since the directory is removed when its scratch is collected
 	server *localpg.Server
 	admin  *pgxpool.Pool
 	copies string // how a database is copied
@@ -56,7 +57,7 @@ var shared = sync.OnceValues(func() (*cluster, error) {
 	if err != nil {
 		return nil, err
 	}
-	c := &cluster{server: server, admin: admin, templates: map[uintptr]func() (string, error){}}
+	c := &cluster{dir: dir, server: server, admin: admin, templates: map[uintptr]func() (string, error){}}
 	var version int
 	if err := admin.QueryRow(ctx, "select current_setting('server_version_num')::int").Scan(&version); err != nil {
 		return nil, err
