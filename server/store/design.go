@@ -3,7 +3,9 @@ package store
 import (
 	"context"
 	"crypto/sha256"
+	"errors"
 	"fmt"
+	"math"
 	"slices"
 	"time"
 
@@ -52,10 +54,12 @@ func contentHash(texts ...string) [32]byte {
 func (s *Store) SaveRevision(ctx context.Context, actor record.Actor, save Save) (saved record.Revision, err error) {
 	defer wrap(&err, "save design %q made from revision %d", save.Design, save.Base)
 	id, number := save.Design, save.Base+1
-	if id == "" {
-		if save.Base != 0 {
-			return saved, fmt.Errorf("%w: a new design is made from no revision", record.ErrInvalid)
-		}
+	switch {
+	case save.Base < 0 || save.Base >= math.MaxInt32:
+		return saved, fmt.Errorf("%w: no revision has the number %d", record.ErrInvalid, save.Base)
+	case id == "" && save.Base != 0:
+		return saved, fmt.Errorf("%w: a new design is made from no revision", record.ErrInvalid)
+	case id == "":
 		id = s.newID()
 	}
 	content := save.content()
@@ -70,7 +74,11 @@ func (s *Store) SaveRevision(ctx context.Context, actor record.Actor, save Save)
 			saved.Repeated = true
 			return err
 		}
-		at, err := pointAt(ctx, tx, actor, id, number, &save.Frozen)
+		point := moveDesign
+		if save.Design == "" {
+			point = addDesign
+		}
+		at, err := point(ctx, tx, actor, id, number, &save.Frozen)
 		if err != nil {
 			return err
 		}
@@ -100,42 +108,43 @@ func storable(f record.Frozen) record.Frozen {
 	return f
 }
 
-// pointAt makes a design, or moves an existing one from the revision before number
-// to number, and returns the time.
-func pointAt(ctx context.Context, tx pgx.Tx, actor record.Actor, id record.ID, number int, f *record.Frozen) (at time.Time, err error) {
-	const insert = `
+// addDesign adds a design whose first revision is about to be added, and returns the
+// time.
+func addDesign(ctx context.Context, tx pgx.Tx, actor record.Actor, id record.ID, number int, f *record.Frozen) (time.Time, error) {
+	return one(ctx, tx, pgx.RowTo[time.Time], `
 		insert into design (id, title, site, revision, verdict, headroom_c, words,
 			created_by, created_by_name, updated_by, updated_by_name)
 		values (@id, @title, @site, @number, @verdict::text::verdict, @headroom::text::numeric, @words::text::tsvector,
 			@actor, @actor_name, @actor, @actor_name)
-		returning updated_at`
-	const update = `
+		returning updated_at`, designArgs(actor, id, number, f))
+}
+
+// moveDesign moves a design from the revision before number to number, which is about
+// to be added, and returns the time. Of several who try, the others wait for the
+// first and then find that it has moved.
+func moveDesign(ctx context.Context, tx pgx.Tx, actor record.Actor, id record.ID, number int, f *record.Frozen) (time.Time, error) {
+	at, err := one(ctx, tx, pgx.RowTo[time.Time], `
 		update design set title = @title, site = @site, revision = @number, verdict = @verdict::text::verdict,
 			headroom_c = @headroom::text::numeric, words = @words::text::tsvector,
 			updated_at = now(), updated_by = @actor, updated_by_name = @actor_name
 		where id = @id and revision = @number - 1
-		returning updated_at`
-	sql := update
-	if number == 1 {
-		sql = insert
+		returning updated_at`, designArgs(actor, id, number, f))
+	if !errors.Is(err, pgx.ErrNoRows) {
+		return at, err
 	}
-	rows, _ := tx.Query(ctx, sql, pgx.StrictNamedArgs{
-		"id": clean(id), "number": number, "title": short(f.Title), "site": short(f.Site),
-		"verdict": f.Verdict.String(), "headroom": encodeHeadroom(f.HeadroomC), "words": words(f),
-		"actor": clean(actor.ID), "actor_name": clean(actor.Name),
-	})
-	found, err := pgx.CollectRows(rows, pgx.RowTo[time.Time])
+	newest, err := one(ctx, tx, pgx.RowTo[int64], `select revision from design where id = $1`, clean(id))
 	if err != nil {
 		return at, err
 	}
-	if len(found) == 0 {
-		newest, err := one(ctx, tx, pgx.RowTo[int64], `select revision from design where id = $1`, clean(id))
-		if err != nil {
-			return at, err
-		}
-		return at, &record.StaleError{Newest: newest}
+	return at, &record.StaleError{Newest: newest}
+}
+
+func designArgs(actor record.Actor, id record.ID, number int, f *record.Frozen) pgx.StrictNamedArgs {
+	return pgx.StrictNamedArgs{
+		"id": clean(id), "number": number, "title": short(f.Title), "site": short(f.Site),
+		"verdict": f.Verdict.String(), "headroom": encodeHeadroom(f.HeadroomC), "words": words(f),
+		"actor": clean(actor.ID), "actor_name": clean(actor.Name),
 	}
-	return found[0], nil
 }
 
 // addRevision adds the revision with what it uses, and takes away the draft.
@@ -211,6 +220,9 @@ func (s *Store) Design(ctx context.Context, id record.ID) (d record.Design, err 
 // Revision returns a revision of a design, the newest for number 0.
 func (s *Store) Revision(ctx context.Context, id record.ID, number int) (r record.Revision, err error) {
 	defer wrap(&err, "revision %d of design %q", number, id)
+	if number < 0 || number > math.MaxInt32 {
+		return r, record.ErrNotFound
+	}
 	err = s.read(ctx, func(ctx context.Context, conn *pgx.Conn) (err error) {
 		r, err = revision(ctx, conn, id, number)
 		return err
@@ -338,7 +350,7 @@ func (s *Store) Duplicate(ctx context.Context, actor record.Actor, id record.ID,
 			if err != nil {
 				return err
 			}
-			if _, err := pointAt(ctx, tx, actor, newID, 1, &frozen); err != nil {
+			if _, err := addDesign(ctx, tx, actor, newID, 1, &frozen); err != nil {
 				return err
 			}
 			if err := addRevision(ctx, tx, actor, newID, 1, &Save{Frozen: frozen}); err != nil {
@@ -366,7 +378,7 @@ func retitled(f record.Frozen, title string) (record.Frozen, error) {
 	return f, nil
 }
 
-// WhereUsed returns up to limit designs whose newest revision uses equipment of this
+// WhereUsed returns up to limit designs, and 200 at most, whose newest revision uses equipment of this
 // maker and model, in whatever capitals and spaces; archived ones too, since what
 // was built of them stands. The one changed last is first.
 func (s *Store) WhereUsed(ctx context.Context, kind record.Kind, maker, model string, limit int) (designs []record.Design, err error) {
@@ -377,7 +389,7 @@ func (s *Store) WhereUsed(ctx context.Context, kind record.Kind, maker, model st
 			where exists (
 				select 1 from revision_use u
 				where u.sought = $1 and u.kind = $2 and u.design = design.id and u.number = design.revision)
-			order by updated_at desc, id desc limit $3`, sought(maker, model), clean(kind), limit)
+			order by updated_at desc, id desc limit $3`, sought(maker, model), clean(kind), min(max(limit, 0), maxPageSize))
 		return err
 	})
 	return designs, err

@@ -3,6 +3,7 @@ package store
 import (
 	"context"
 	"fmt"
+	"math"
 	"time"
 
 	"github.com/jackc/pgx/v5"
@@ -23,6 +24,9 @@ func (s *Store) SaveDraft(ctx context.Context, actor record.Actor, d record.Draf
 	defer wrap(&err, "save draft %q at version %d", d.ID, d.Version)
 	if d.ID == "" && d.Version != 0 {
 		return saved, fmt.Errorf("%w: a new draft has no version yet", record.ErrInvalid)
+	}
+	if d.Base < 0 || d.Base > math.MaxInt32 {
+		return saved, fmt.Errorf("%w: no revision has the number %d", record.ErrInvalid, d.Base)
 	}
 	if d.ID == "" {
 		d.ID = s.newID()
@@ -101,7 +105,7 @@ func (s *Store) DraftOf(ctx context.Context, design record.ID) (d record.Draft, 
 	return d, err
 }
 
-// Drafts returns up to limit drafts, the one saved last first.
+// Drafts returns up to limit drafts, and 200 at most, the one saved last first.
 func (s *Store) Drafts(ctx context.Context, limit int) (drafts []record.Draft, err error) {
 	defer wrap(&err, "list drafts")
 	err = s.read(ctx, func(ctx context.Context, conn *pgx.Conn) (err error) {

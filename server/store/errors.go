@@ -53,6 +53,8 @@ func wrap(err *error, format string, args ...any) {
 // fault of the database.
 func kind(caller context.Context, err error) error {
 	switch {
+	case err == nil:
+		return nil
 	case hasKind(err) && !errors.Is(err, record.ErrUnavailable), errors.Is(err, record.ErrUnknownOutcome):
 		return err
 	case errors.Is(caller.Err(), context.Canceled):
@@ -80,6 +82,9 @@ func kindOf(err error) error {
 	if pgErr, ok := errors.AsType[*pgconn.PgError](err); ok {
 		if pgErr.ConstraintName != "" {
 			return constraintKinds[pgErr.ConstraintName]
+		}
+		if pgErr.Code == "23502" {
+			return record.ErrInvalid // something that must be given was not
 		}
 		if away(pgErr.Code) {
 			return record.ErrUnavailable

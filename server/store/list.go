@@ -5,11 +5,13 @@ import (
 	"context"
 	"encoding/base64"
 	"encoding/json"
+	"errors"
 	"fmt"
 	"slices"
 	"strings"
 
 	"github.com/jackc/pgx/v5"
+	"github.com/jackc/pgx/v5/pgconn"
 
 	"rimeline/server/record"
 )
@@ -115,6 +117,9 @@ func fetch[T any](ctx context.Context, s *Store, l list, scan func(row pgx.Colle
 		})
 		return conn.SendBatch(ctx, &batch).Close()
 	})
+	if pgErr, ok := errors.AsType[*pgconn.PgError](err); ok && l.cursor != "" && strings.HasPrefix(pgErr.Code, "22") {
+		return page[T]{}, fmt.Errorf("%w: the cursor is not one of this list: %w", record.ErrInvalid, err) // its keys are no dates, numbers, verdicts
+	}
 	if err != nil {
 		return page[T]{}, err
 	}
@@ -165,9 +170,10 @@ func (l *list) sql(from cursor) (string, pgx.StrictNamedArgs) {
 		args[name] = value
 	}
 	for i, k := range l.order.keys {
-		columns = append(columns, k.column)
-		texts = append(texts, k.column+"::text")
-		by = append(by, k.column+" "+way)
+		column := l.table + "." + k.column // alone, it would be the column of the answer, which is a text
+		columns = append(columns, column)
+		texts = append(texts, column+"::text")
+		by = append(by, column+" "+way)
 		if from.Keys != nil {
 			name := fmt.Sprintf("from%d", i)
 			given = append(given, fmt.Sprintf("@%s::text::%s", name, k.kind))

@@ -159,7 +159,7 @@ func pending(steps, applied []migration) ([]migration, error) {
 		case done.name != steps[i].name:
 			return nil, fmt.Errorf("the database has had %s applied where this program has %s: it belongs to another program", done.name, steps[i].name)
 		case !bytes.Equal(done.sha256, steps[i].sha256):
-			return nil, fmt.Errorf("%s was changed after it was applied here: restore it as it was (SHA-256 %x…), and make the change in a file of its own", done.name, done.sha256[:6])
+			return nil, fmt.Errorf("%s was changed after it was applied here: restore it as it was (SHA-256 %.6x…), and make the change in a file of its own", done.name, done.sha256)
 		}
 	}
 	return steps[len(applied):], nil

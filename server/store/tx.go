@@ -79,24 +79,25 @@ func (s *Store) run(caller context.Context, do func(context.Context, *pgx.Conn) 
 	ctx, cancel := context.WithTimeout(caller, patience)
 	defer cancel()
 	for attempt := 1; ; attempt++ {
-		conn, err := s.pool.Acquire(ctx)
-		if err != nil {
-			return kind(caller, fmt.Errorf("%w: %w", record.ErrUnavailable, err))
-		}
-		again, err := do(ctx, conn.Conn())
-		dead := conn.Conn().IsClosed()
-		conn.Release()
-		if err == nil {
-			return nil
-		}
-		if dead && ctx.Err() == nil {
-			s.log.WarnContext(ctx, "a connection to the database broke", "err", err, "attempt", attempt)
-			s.pool.Reset() // the others are dead too, more often than not
-		}
-		if !again || attempt == attempts || ctx.Err() != nil {
+		again, err := s.runOnce(ctx, do)
+		if err == nil || !again || attempt == attempts || ctx.Err() != nil {
 			return kind(caller, err)
 		}
 	}
+}
+
+func (s *Store) runOnce(ctx context.Context, do func(context.Context, *pgx.Conn) (again bool, err error)) (again bool, err error) {
+	conn, err := s.pool.Acquire(ctx)
+	if err != nil {
+		return false, fmt.Errorf("%w: %w", record.ErrUnavailable, err)
+	}
+	defer conn.Release()
+	again, err = do(ctx, conn.Conn())
+	if err != nil && conn.Conn().IsClosed() && ctx.Err() == nil {
+		s.log.WarnContext(ctx, "a connection to the database broke", "err", err)
+		s.pool.Reset() // the others are dead too, more often than not
+	}
+	return again, err
 }
 
 // one returns the only row of a query.
