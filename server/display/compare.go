@@ -53,28 +53,25 @@ func lead(p *views.Comparison) string {
 	for _, g := range p.Verdicts {
 		turned += len(g.Rows)
 	}
+	inputs, results := int64(rowsOf(p.Inputs)), int64(rowsOf(p.Results))
 	var words []string
-	for _, of := range []struct {
-		n         int
-		one, many string
-	}{
-		{turned, "verdict turns", "verdicts turn"},
-		{rowsOf(p.Inputs), "input differs", "inputs differ"},
-		{rowsOf(p.Results), "result differs", "results differ"},
-	} {
-		if of.n > 0 {
-			words = append(words, counted(int64(of.n), of.one, of.many))
-		}
+	if inputs > 0 {
+		words = append(words, counted(inputs, "input", "inputs"))
 	}
+	if results > 0 {
+		words = append(words, counted(results, "result", "results"))
+	}
+	s := "No verdict turns"
 	switch {
+	case turned > 0:
+		s = counted(int64(turned), "verdict turns", "verdicts turn")
 	case len(words) == 0 && len(p.Verdicts) == 0 && len(p.Asked) == 0 && len(p.Closed) == 0 && len(p.Moved) == 0:
 		return "Nothing differs."
-	case turned > 0:
-		return list(words) + "."
-	case len(words) == 0:
-		return "No verdict turns."
 	}
-	return "No verdict turns; " + list(words) + "."
+	if len(words) > 0 {
+		s += "; " + list(words) + " " + isOrAre(inputs+results, "differs", "differ")
+	}
+	return s + "."
 }
 
 func rowsOf(groups []views.ChangeGroup) (n int) {
@@ -291,19 +288,34 @@ func (c *comparer) results() []views.ChangeGroup {
 	return append(groups, c.strung()...)
 }
 
+// headroomFigure is how much colder it must get until a ceiling is met. Temperatures
+// below −60 °C do not occur on roofs, and differences between them say nothing.
+func (c *composer) headroomFigure(gap *quantity.Exact) figure {
+	switch {
+	case gap == nil:
+		return figure{}
+	case !c.byTable() && c.d.Site.Coldest.Celsius().Sub(*gap).Less(quantity.Int(-60)):
+		return figure{text: "met only below " + wholeDegrees(-60)}
+	}
+	return figure{text: degreesApart(*gap, quantity.Down), value: rounded(*gap, placesDegree, quantity.Down), unit: "°C", places: placesDegree, degree: true}
+}
+
+// rounded is a number as it is shown, so that a difference is that of what one reads.
+func rounded(x quantity.Exact, places int, dir quantity.Direction) *quantity.Exact {
+	text, _ := x.Fixed(places, dir)
+	r, err := quantity.Parse(text)
+	if err != nil {
+		return &x // with more digits than are read
+	}
+	return &r
+}
+
 func (c *comparer) whole() []views.ChangeGroup {
 	g := changes{of: "The whole array"}
-	headroom := func(c *composer) figure {
-		least := c.r.LeastHeadroomC()
-		if least == nil {
-			return figure{}
-		}
-		return figure{text: degreesApart(*least, quantity.Down), value: least, unit: "°C", places: placesDegree, degree: true}
-	}
 	if len(c.was.d.Strings)+len(c.now.d.Strings) > 0 {
 		g.figures("modules", exactCount(c.was.modulesOf(everyString)), exactCount(c.now.modulesOf(everyString)))
 		g.figures("power at STC", kilowattFigure(c.was.powerOf(everyString)), kilowattFigure(c.now.powerOf(everyString)))
-		g.figures("least headroom", headroom(c.was), headroom(c.now))
+		g.figures("least headroom", c.was.headroomFigure(c.was.r.LeastHeadroomC()), c.now.headroomFigure(c.now.r.LeastHeadroomC()))
 	}
 	return g.group()
 }
@@ -429,10 +441,10 @@ func (c *comparer) limit(g *changes, was, now *sizing.Limit) {
 		return figure{text: statedIn(l.VoltageCeilingV, "V") + " (" + c.ceilingName(l.VoltageCeilingFrom) + ")", value: &l.VoltageCeilingV, unit: "V", places: placesString}
 	})
 	each("one module open-circuit, coldest morning", func(_ *composer, l *sizing.Limit) figure {
-		return figure{text: moduleVolts(l.ModuleVocColdV, quantity.Up), value: &l.ModuleVocColdV, unit: "V", places: placesModule}
+		return figure{text: moduleVolts(l.ModuleVocColdV, quantity.Up), value: rounded(l.ModuleVocColdV, placesModule, quantity.Up), unit: "V", places: placesModule}
 	})
 	each("one module operating, hottest roof", func(_ *composer, l *sizing.Limit) figure {
-		return figure{text: moduleVolts(l.ModuleVmpHotV, quantity.Down), value: &l.ModuleVmpHotV, unit: "V", places: placesModule}
+		return figure{text: moduleVolts(l.ModuleVmpHotV, quantity.Down), value: rounded(l.ModuleVmpHotV, placesModule, quantity.Down), unit: "V", places: placesModule}
 	})
 }
 
@@ -453,7 +465,7 @@ func (c *comparer) strung() []views.ChangeGroup {
 					return figure{}
 				}
 				value := value(&c.r.Strings[at])
-				return figure{text: withUnit(shown(value, places, dir), unit), value: &value, unit: unit, places: places}
+				return figure{text: withUnit(shown(value, places, dir), unit), value: rounded(value, places, dir), unit: unit, places: places}
 			}
 			g.figures(name, figureOf(c.was, s.before), figureOf(c.now, s.after))
 		}
@@ -479,9 +491,21 @@ func (c *comparer) strung() []views.ChangeGroup {
 	}
 	var groups []views.ChangeGroup
 	for _, t := range all {
-		groups = append(groups, views.ChangeGroup{Of: t.side.about(t.abouts), Rows: t.rows})
+		groups = append(groups, views.ChangeGroup{Of: marks(t.abouts) + t.side.about(t.abouts), Rows: t.rows})
 	}
 	return groups
+}
+
+// marks are the numbers of a few strings entries: "S1 and S2: ".
+func marks(abouts []working.About) string {
+	if len(abouts) > 3 {
+		return ""
+	}
+	var words []string
+	for _, a := range abouts {
+		words = append(words, stringsMark(a.String))
+	}
+	return list(words) + ": "
 }
 
 // moved tells the checks that keep their verdict while their value or limit moves.
@@ -501,7 +525,7 @@ func (c *comparer) moved(all []match) []views.ChangeGroup {
 			continue
 		}
 		g := changes{}
-		g.figures("", checkFigure(m.was), checkFigure(m.now))
+		g.figures("", c.was.checkFigure(m.was), c.now.checkFigure(m.now))
 		if len(g.rows) == 0 {
 			continue
 		}
@@ -532,7 +556,10 @@ func (c *comparer) moved(all []match) []views.ChangeGroup {
 }
 
 // checkFigure is a check's value beside its limit.
-func checkFigure(k *working.Check) figure {
+func (c *composer) checkFigure(k *working.Check) figure {
+	if k.ID == "headroom" {
+		return c.headroomFigure(k.Value)
+	}
 	if k.Value == nil {
 		if k.Limit == nil {
 			return figure{}
@@ -544,7 +571,7 @@ func checkFigure(k *working.Check) figure {
 		dir = quantity.Down
 	}
 	places := placesOf(k.Unit)
-	f := figure{text: withUnit(shown(*k.Value, places, dir), k.Unit), value: k.Value, unit: k.Unit, places: places, degree: k.Unit == "°C"}
+	f := figure{text: withUnit(shown(*k.Value, places, dir), k.Unit), value: rounded(*k.Value, places, dir), unit: k.Unit, places: places, degree: k.Unit == "°C"}
 	if k.Limit != nil {
 		f.text += " against " + limitOf(k)
 	}

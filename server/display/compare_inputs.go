@@ -2,6 +2,7 @@ package display
 
 import (
 	"cmp"
+	"slices"
 	"strconv"
 	"strings"
 
@@ -21,17 +22,15 @@ func (c *comparer) inputs() []views.ChangeGroup {
 			pl := &s.d.Planes[i]
 			l := listing{}
 			l.add("id", "name", pl.ID, "")
-			module := pl.Module
-			if m := s.d.Module(pl.Module); m != nil {
-				module = s.module(m)
+			if !c.sameModule(p) {
+				l.add("module", "module", s.module(s.d.Module(pl.Module)), "")
 			}
-			l.add("module", "module", module, "")
 			return capital(s.plane(pl.ID)), l.with(planeFields(pl, i, ""))
 		})...)
 	}
 	for _, p := range c.strings {
 		groups = append(groups, c.entry("Strings", p, func(s *composer, i int) (string, part) {
-			return stringsMark(i), s.entryFields(i)
+			return stringsMark(i), c.entryFields(s, i, p)
 		})...)
 	}
 	groups = append(groups, c.parts("Margins", allowanceFields(c.before), allowanceFields(c.after))...)
@@ -81,7 +80,7 @@ func (c *comparer) equipment() []views.ChangeGroup {
 				}
 				v := &s.d.Inverters[i]
 				l := listing{}
-				l.add("id", "id", v.Trackers[j].ID, "")
+				l.add("id", "name", v.Trackers[j].ID, "")
 				of := "Tracker " + v.Trackers[j].ID
 				if s.severalI {
 					of += " of " + s.inverter(v.ID)
@@ -97,7 +96,7 @@ func makerAndModel(maker, model, id string) *listing {
 	l := &listing{}
 	l.add("maker", "maker", maker, "")
 	l.add("model", "model", model, "")
-	l.add("id", "id", id, "")
+	l.add("id", "id in the file", id, "")
 	return l
 }
 
@@ -134,17 +133,40 @@ func jobFields(d *design.Design) part {
 	return l.part
 }
 
-// entryFields are the fields of a strings entry.
-func (c *composer) entryFields(i int) part {
-	s := &c.d.Strings[i]
+// entryFields are the fields of a strings entry. A plane or a tracker that is only
+// called otherwise is no change of the entry.
+func (c *comparer) entryFields(of *composer, i int, p pair) part {
+	var samePlane, sameInverter, sameTracker bool
+	if p.before >= 0 && p.after >= 0 {
+		b, a := &c.before.Strings[p.before], &c.after.Strings[p.after]
+		inverter, tracker := c.terminalAfter(b.Inverter, b.Tracker)
+		samePlane, sameInverter = c.planeAfter(b.Plane) == a.Plane, inverter == a.Inverter
+		sameTracker = sameInverter && tracker == a.Tracker
+	}
+	s := &of.d.Strings[i]
 	l := listing{}
-	l.add("plane", "from", c.plane(s.Plane), "")
-	l.add("inverter", "inverter", c.inverter(s.Inverter), "")
+	if !samePlane {
+		l.add("plane", "from", of.plane(s.Plane), "")
+	}
+	if !sameInverter {
+		l.add("inverter", "inverter", of.inverter(s.Inverter), "")
+	}
 	l.count("unit", "unit", s.Unit)
-	l.add("tracker", "tracker", s.Tracker, "")
+	if !sameTracker {
+		l.add("tracker", "tracker", s.Tracker, "")
+	}
 	l.count("modules_in_series", "modules in series", s.ModulesInSeries)
 	l.count("strings_in_parallel", "strings in parallel", s.StringsInParallel)
 	return l.part
+}
+
+// sameModule reports whether a plane has the same module on both sides, whatever it
+// is called.
+func (c *comparer) sameModule(plane pair) bool {
+	return plane.before >= 0 && plane.after >= 0 && slices.ContainsFunc(c.modules, func(m pair) bool {
+		return m.before >= 0 && m.after >= 0 && c.before.Modules[m.before].ID == c.before.Planes[plane.before].Module &&
+			c.after.Modules[m.after].ID == c.after.Planes[plane.after].Module
+	})
 }
 
 // entry tells what differs in one entry of a list. of names it and lists its fields
