@@ -89,6 +89,7 @@ CREATE TABLE public.equipment (
     archived_at timestamp with time zone,
     archived_by text,
     archived_by_name text,
+    answers bytea DEFAULT '\x5b5d'::bytea NOT NULL,
     CONSTRAINT equipment_actor_check CHECK (((created_by <> ''::text) AND (updated_by <> ''::text) AND (archived_by <> ''::text))),
     CONSTRAINT equipment_archived_check CHECK ((num_nulls(archived_at, archived_by, archived_by_name) = ANY (ARRAY[0, 3]))),
     CONSTRAINT equipment_document_check CHECK ((document <> '\x'::bytea)),

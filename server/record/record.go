@@ -104,7 +104,8 @@ type Equipment struct {
 	Maker      string
 	Model      string
 	Document   []byte            // JSON of the module or inverter as it stands in a design, without its id
-	Sources    map[string]string // JSON Pointer inside Document → where on the datasheet
+	Sources    map[string]string // JSON Pointer inside Document → where on the datasheet; "" is all of it
+	Answers    []design.Answer   // why values that look like slips are right; pointers inside Document
 	Note       string
 	Version    int64 // grows by one with every save
 	Created    Stamp

@@ -19,16 +19,16 @@ func (s *Store) SaveEquipment(ctx context.Context, actor record.Actor, e record.
 	if e.ID == "" && e.Version != 0 {
 		return saved, fmt.Errorf("%w: new equipment has no version yet", record.ErrInvalid)
 	}
-	sources := encodeFields(e.Sources)
-	content := contentHash("equipment", string(e.ID), fmt.Sprint(e.Version), string(e.Kind), e.Maker, e.Model, string(e.Document), sources, e.Note)
+	sources, answers := encodeFields(e.Sources), encodeAnswers(e.Answers)
+	content := contentHash("equipment", string(e.ID), fmt.Sprint(e.Version), string(e.Kind), e.Maker, e.Model, string(e.Document), sources, string(answers), e.Note)
 	const insert = `
-		insert into equipment (id, kind, maker, model, document, sources, note, version, words,
+		insert into equipment (id, kind, maker, model, document, sources, answers, note, version, words,
 			created_by, created_by_name, updated_by, updated_by_name)
-		values (@id, @kind, @maker, @model, @document, @sources, @note, @version::bigint + 1, @words::text::tsvector,
+		values (@id, @kind, @maker, @model, @document, @sources, @answers, @note, @version::bigint + 1, @words::text::tsvector,
 			@actor, @actor_name, @actor, @actor_name)
 		returning ` + equipmentColumns
 	const update = `
-		update equipment set kind = @kind, maker = @maker, model = @model, document = @document, sources = @sources, note = @note,
+		update equipment set kind = @kind, maker = @maker, model = @model, document = @document, sources = @sources, answers = @answers, note = @note,
 			version = version + 1, words = @words::text::tsvector,
 			updated_at = now(), updated_by = @actor, updated_by_name = @actor_name
 		where id = @id and version = @version
@@ -48,7 +48,7 @@ func (s *Store) SaveEquipment(ctx context.Context, actor record.Actor, e record.
 		}
 		found, err := all(ctx, tx, equipmentRow, sql, pgx.StrictNamedArgs{
 			"id": clean(id), "kind": clean(e.Kind), "maker": short(e.Maker), "model": short(e.Model),
-			"document": e.Document, "sources": sources, "note": clean(e.Note), "version": e.Version,
+			"document": e.Document, "sources": sources, "answers": answers, "note": clean(e.Note), "version": e.Version,
 			"words": tsvector(record.Words(e.Maker, e.Model)),
 			"actor": clean(actor.ID), "actor_name": clean(actor.Name),
 		})
@@ -68,19 +68,23 @@ func (s *Store) SaveEquipment(ctx context.Context, actor record.Actor, e record.
 	return saved, err
 }
 
-const equipmentColumns = `id, kind, maker, model, document, sources, note, version,
+const equipmentColumns = `id, kind, maker, model, document, sources, answers, note, version,
 	created_at, created_by, created_by_name, updated_at, updated_by, updated_by_name, archived_at`
 
 func scanEquipment(row pgx.CollectableRow, more ...any) (e record.Equipment, err error) {
 	var sources string
+	var answers []byte
 	err = row.Scan(append([]any{
-		&e.ID, &e.Kind, &e.Maker, &e.Model, &e.Document, &sources, &e.Note, &e.Version,
+		&e.ID, &e.Kind, &e.Maker, &e.Model, &e.Document, &sources, &answers, &e.Note, &e.Version,
 		&e.Created.At, &e.Created.By.ID, &e.Created.By.Name, &e.Updated.At, &e.Updated.By.ID, &e.Updated.By.Name, &e.ArchivedAt,
 	}, more...)...)
 	if err != nil {
 		return e, err
 	}
-	e.Sources, err = decodeFields(sources)
+	if e.Sources, err = decodeFields(sources); err != nil {
+		return e, err
+	}
+	e.Answers, err = decodeAnswers(answers)
 	return e, err
 }
 

@@ -10,12 +10,14 @@ import (
 
 	"rimeline/server/record"
 	"rimeline/server/store"
+	"rimeline/sizing/design"
 )
 
 func module(maker, model string) record.Equipment {
 	return record.Equipment{
 		Kind: record.KindModule, Maker: maker, Model: model, Document: []byte(`{"maker":"` + maker + `","model":"` + model + `"}`),
 		Sources: map[string]string{"/voc_v": "sheet 2, table \x00", "": "everything else"}, Note: "as delivered",
+		Answers: []design.Answer{{Pointer: "/voc_v", ValueAsked: `{"isc_a":1,"voc_v":37.3}`, Reason: "so printed <twice> \x00"}},
 	}
 }
 
@@ -39,7 +41,7 @@ func TestSaveEquipment(t *testing.T) {
 		t.Errorf("mismatch (-want +saved)\n%s", diff)
 	}
 	changed := first
-	changed.Model, changed.Kind, changed.Document, changed.Sources, changed.Note = "X-2", record.KindInverter, []byte("\x00\xff"), nil, ""
+	changed.Model, changed.Kind, changed.Document, changed.Sources, changed.Answers, changed.Note = "X-2", record.KindInverter, []byte("\x00\xff"), nil, nil, ""
 	second, err := s.SaveEquipment(t.Context(), ben, changed, "")
 	want = changed
 	want.Version, want.Updated, want.Sources = 2, second.Updated, map[string]string{}

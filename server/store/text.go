@@ -1,6 +1,7 @@
 package store
 
 import (
+	"encoding/json"
 	"fmt"
 	"maps"
 	"math/big"
@@ -10,6 +11,7 @@ import (
 	"unicode/utf8"
 
 	"rimeline/server/record"
+	"rimeline/sizing/design"
 	"rimeline/sizing/quantity"
 	"rimeline/sizing/working"
 )
@@ -76,6 +78,37 @@ func decodeFields(encoded string) (map[string]string, error) {
 		}
 	}
 	return fields, nil
+}
+
+// keptAnswer is an answer as equipment keeps it.
+type keptAnswer struct {
+	Pointer    string       `json:"pointer"`
+	ValueAsked design.Asked `json:"value_asked"` // the JSON as a text, so that every byte of it comes back
+	Reason     string       `json:"reason"`
+}
+
+func encodeAnswers(answers []design.Answer) []byte {
+	list := make([]keptAnswer, len(answers))
+	for i, a := range answers {
+		list[i] = keptAnswer(a)
+	}
+	text, err := json.Marshal(list)
+	if err != nil {
+		panic(err) // it is made of texts
+	}
+	return text
+}
+
+func decodeAnswers(text []byte) ([]design.Answer, error) {
+	var list []keptAnswer
+	if err := json.Unmarshal(text, &list); err != nil {
+		return nil, fmt.Errorf("saved answers: %w", err)
+	}
+	var answers []design.Answer
+	for _, a := range list {
+		answers = append(answers, design.Answer(a))
+	}
+	return answers, nil
 }
 
 // unknownHeadroom is how headroom that is not known is kept: below every number,
