@@ -72,6 +72,12 @@ func Open(ctx context.Context, connString string, log *slog.Logger) (*Store, err
 	if cfg.ConnConfig.ConnectTimeout == 0 || cfg.ConnConfig.ConnectTimeout > connectTimeout {
 		cfg.ConnConfig.ConnectTimeout = connectTimeout
 	}
+	lookUp := cfg.ConnConfig.LookupFunc
+	cfg.ConnConfig.LookupFunc = func(ctx context.Context, host string) ([]string, error) {
+		ctx, cancel := context.WithTimeout(ctx, connectTimeout)
+		defer cancel()
+		return lookUp(ctx, host)
+	}
 	cfg.PingTimeout = connectTimeout
 	for name, value := range map[string]string{
 		"application_name":                    "rimeline",

@@ -50,19 +50,22 @@ func (s *Store) write(ctx context.Context, do func(ctx context.Context, tx pgx.T
 // commit ends a transaction. It reports whether it may be tried again, which it may
 // not where it is not known whether the database did it.
 func commit(ctx context.Context, tx pgx.Tx, conn *pgx.Conn) (again bool, err error) {
+	if conn.IsClosed() {
+		return true, pgconn.ErrConnClosed
+	}
 	// The work is done: a caller that goes away now must not make it unknown whether
 	// it was saved.
 	ctx, cancel := context.WithTimeout(context.WithoutCancel(ctx), patience)
 	defer cancel()
 	err = tx.Commit(ctx)
-	switch pgErr, told := errors.AsType[*pgconn.PgError](err); {
-	case err == nil:
+	if err == nil {
 		return false, nil
-	case errors.Is(err, pgx.ErrTxCommitRollback), told && pgErr.SeverityUnlocalized == "ERROR":
-		return refusedForAnother(err), err // the server says that it undid it
-	case pgconn.SafeToRetry(err):
-		return conn.IsClosed(), err // the commit was never sent
 	}
+	if pgErr, told := errors.AsType[*pgconn.PgError](err); errors.Is(err, pgx.ErrTxCommitRollback) || told && pgErr.SeverityUnlocalized == "ERROR" {
+		return refusedForAnother(err), err // the server says that it undid it
+	}
+	// pgconn.SafeToRetry is of no use here: it says that a commit was never sent also
+	// where the connection was cut before its answer came.
 	return false, fmt.Errorf("%w: %w: %w", record.ErrUnavailable, record.ErrUnknownOutcome, err)
 }
 
