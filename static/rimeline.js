@@ -183,6 +183,18 @@
 		before = now.verdict;
 	};
 
+	// A button of the form is on its way with all that was typed, and its page brings
+	// the answer: to ask for the answer alone meanwhile would cancel the button.
+	let pressed = 0;
+	document.addEventListener("htmx:config:request", (e) => {
+		const action = e.detail.ctx.request.action;
+		if (action === "/design") pressed++;
+		if (action === "/design/answer" && pressed) e.preventDefault();
+	});
+	document.addEventListener("htmx:finally:request", (e) => {
+		if (e.detail.ctx.request.action === "/design") pressed--;
+	});
+
 	const ofDesign = (e) => e.detail?.ctx?.request?.action?.startsWith("/design");
 	document.addEventListener("htmx:before:swap", (e) => {
 		if (!ofDesign(e)) return;

@@ -13,6 +13,7 @@ import (
 	"strconv"
 	"strings"
 	"testing"
+	"time"
 
 	"github.com/chromedp/cdproto/emulation"
 	"github.com/chromedp/chromedp"
@@ -288,6 +289,28 @@ func TestBrowser_LiveAnswer(t *testing.T) {
 		t.Errorf("%d keys sent %d requests: the answer is to wait for a pause", len(typed), n)
 	}
 	b.sound()
+}
+
+// TestBrowser_ButtonRightAfterTyping: a button that is pressed before the answer to
+// the last key was asked for does what it says, however slow the service is.
+func TestBrowser_ButtonRightAfterTyping(t *testing.T) {
+	needBrowser(t)
+	fast := server.New(server.Config{})
+	site := httptest.NewServer(http.HandlerFunc(func(w http.ResponseWriter, r *http.Request) {
+		if r.URL.Path == "/design" {
+			time.Sleep(400 * time.Millisecond) // longer than the pause after which the answer is asked for
+		}
+		fast.ServeHTTP(w, r)
+	}))
+	defer site.Close()
+	b := openTab(t, site.URL, desk, true)
+	b.open("/example")
+	b.retype("/strings/0/modules_in_series", "11")
+	b.do(chromedp.Evaluate[chromedp.Void](`document.querySelector('[value="add /strings"]').click()`))
+	b.wait(`!!document.querySelector('[name="/strings/2/modules_in_series"]')`)
+	if got := b.value("/strings/0/modules_in_series"); got != "11" {
+		t.Errorf("what was typed before the button is %q, want 11", got)
+	}
 }
 
 // TestBrowser_ServerGone: where the service stops answering, an old answer does not
