@@ -20,10 +20,16 @@ func (f *Form) Read() (*design.Design, design.Faults) {
 	if len(w.faults) == 0 {
 		return read.Design, read.Faults
 	}
-	// What the form could not read went into the document as text; the reader's
-	// words about that text would not be what the person needs.
+	return nil, w.judged(read.Faults)
+}
+
+// judged returns what is wrong with the form: what could not be read, and of the
+// reader's faults those about other fields. What the form could not read went into
+// the document as text; the reader's words about that would not be what the person
+// needs.
+func (w *writer) judged(read design.Faults) design.Faults {
 	faults := w.faults
-	for _, fault := range read.Faults {
+	for _, fault := range read {
 		said := slices.ContainsFunc(w.faults, func(own design.Fault) bool {
 			return FieldOf(own.Pointer) == FieldOf(fault.Pointer)
 		})
@@ -31,7 +37,7 @@ func (f *Form) Read() (*design.Design, design.Faults) {
 			faults = append(faults, fault)
 		}
 	}
-	return nil, faults
+	return faults
 }
 
 // Document returns the form as a document, whole or not: a field with nothing in it

@@ -7,10 +7,9 @@ import (
 	"rimeline/sizing/working"
 )
 
-// A fragment is a module or an inverter alone, as it stands in a design but without
-// its id, which each design that it is copied into gives it. It is read by the one
-// strict reader; the pointers of its faults and questions are those inside it, such
-// as /voc_v.
+// A fragment is a part of a design alone: a module or an inverter without its id,
+// which each design that it is copied into gives it, or answers about one. It is read
+// by the one strict reader; pointers are those inside it, such as /voc_v.
 
 // ReadModule reads a module alone. The module is nil where there are faults.
 func ReadModule(text []byte) (*Module, Faults) {
@@ -30,6 +29,23 @@ func ReadInverter(text []byte) (*Inverter, Faults) {
 	return &v, nil
 }
 
+// ReadAnswers reads a list of answers alone, as answers stand in a design. There are
+// none where there are faults.
+func ReadAnswers(text []byte) ([]Answer, Faults) {
+	var answers []Answer
+	faults := readAlone(text, "a list of answers", func(w *walk) {
+		if w.nodes[0].kind != isList {
+			w.wrongKind(0, "the answers", "a list")
+			return
+		}
+		answers = elements(w.reader, w.nodes[0].first, w.answer)
+	})
+	if faults != nil {
+		return nil, faults
+	}
+	return answers, nil
+}
+
 func readAlone(text []byte, what string, read func(*walk)) Faults {
 	if strings.TrimSpace(strings.TrimPrefix(string(text), byteOrderMark)) == "" {
 		return Faults{{Found: "nothing", Expected: what, Detail: "The text is empty: " + what + " is expected."}}
@@ -42,7 +58,7 @@ func readAlone(text []byte, what string, read func(*walk)) Faults {
 		return Faults{*s.broken}
 	}
 	if s.skipBetween(); s.pos < len(s.src) {
-		s.fail("the end of the text", "One piece of equipment is read here.")
+		s.fail("the end of the text", "Nothing more is read here.")
 		return Faults{*s.broken}
 	}
 	w := walk{reader: &reader{nodes: s.nodes, numbers: make([]quantity.Exact, 0, s.numbers)}, d: new(Design), alone: true}
@@ -63,6 +79,19 @@ func AppendInverter(dst []byte, v *Inverter) []byte {
 	w := writer{dst: append(dst, '{')}
 	w.inverterData(v)
 	w.close('}')
+	return w.dst
+}
+
+// AppendAnswers appends the canonical JSON of answers alone.
+func AppendAnswers(dst []byte, answers []Answer) []byte {
+	w := writer{dst: append(dst, '[')}
+	for i := range answers {
+		w.comma()
+		w.open('{')
+		w.answer(&answers[i])
+		w.close('}')
+	}
+	w.close(']')
 	return w.dst
 }
 

@@ -139,6 +139,30 @@ func TestModuleQuestions(t *testing.T) {
 	}
 }
 
+func TestReadAnswers(t *testing.T) {
+	text := `[{"pointer":"/voc_v","value_asked":{"voc_v":37.30,"isc_a":1},"reason":"so printed"}]`
+	answers, faults := ReadAnswers([]byte(text))
+	want := []Answer{{Pointer: "/voc_v", ValueAsked: `{"isc_a":1,"voc_v":37.3}`, Reason: "so printed"}}
+	if diff := cmp.Diff(want, answers); diff != "" || faults != nil {
+		t.Fatalf("%v (-want +got)\n%s", faults, diff)
+	}
+	again, faults := ReadAnswers(AppendAnswers(nil, answers))
+	if diff := cmp.Diff(want, again); diff != "" || faults != nil {
+		t.Errorf("written and read again: %v\n%s", faults, diff)
+	}
+	if none, faults := ReadAnswers([]byte("[]")); len(none) != 0 || faults != nil || string(AppendAnswers(nil, nil)) != "[]" {
+		t.Errorf("none: %v, %v", none, faults)
+	}
+	for text, pointer := range map[string]string{
+		`{}`: "", `[1]`: "/0", `[{"pointer":"voc_v","value_asked":1,"reason":"x"}]`: "/0/pointer",
+		`[{"pointer":"/voc_v","value_asked":[1],"reason":"x"}]`: "/0/value_asked", `[{"pointer":"/voc_v","value_asked":1}]`: "/0/reason",
+	} {
+		if answers, faults := ReadAnswers([]byte(text)); answers != nil || len(faults) != 1 || faults[0].Pointer != pointer {
+			t.Errorf("%s: %v, %v, want a fault at %q", text, answers, faults, pointer)
+		}
+	}
+}
+
 // FuzzReadModule: whatever is sent is refused with reasons, or read, and then
 // written and read again as the same.
 func FuzzReadModule(f *testing.F) {
