@@ -36,7 +36,7 @@ type savedDesigns interface {
 type savedDrafts interface {
 	SaveDraft(ctx context.Context, actor record.Actor, d record.Draft) (record.Draft, error)
 	Draft(ctx context.Context, id record.ID) (record.Draft, error)
-	DraftOf(ctx context.Context, design record.ID) (record.Draft, error)
+	DraftsOf(ctx context.Context, design record.ID, limit int) ([]record.Draft, error)
 	Drafts(ctx context.Context, limit int) ([]record.Draft, error)
 	DiscardDraft(ctx context.Context, actor record.Actor, id record.ID, version int64) error
 }

@@ -29,4 +29,17 @@ func (e *StaleError) Error() string {
 	return fmt.Sprintf("changed meanwhile: the newest is %d", e.Newest)
 }
 
+// UsedError tells that the key of a save was used before, with another content, and
+// what was made then. It is of the kind [ErrConflict].
+type UsedError struct {
+	Made   ID    // the design or equipment
+	Number int64 // its revision or version
+}
+
+func (e *UsedError) Error() string {
+	return fmt.Sprintf("the request key was used before: %q, number %d, was made then", e.Made, e.Number)
+}
+
+func (e *UsedError) Unwrap() error { return ErrConflict }
+
 func hash(document []byte) [32]byte { return sha256.Sum256(document) }

@@ -41,7 +41,7 @@ func everyCall(s *store.Store, f record.Frozen) map[string]func(context.Context)
 		},
 		"SaveDraft":        func(ctx context.Context) error { _, err := s.SaveDraft(ctx, ann, record.Draft{}); return err },
 		"Draft":            func(ctx context.Context) error { _, err := s.Draft(ctx, "a"); return err },
-		"DraftOf":          func(ctx context.Context) error { _, err := s.DraftOf(ctx, "a"); return err },
+		"DraftsOf":         func(ctx context.Context) error { _, err := s.DraftsOf(ctx, "a", 1); return err },
 		"Drafts":           func(ctx context.Context) error { _, err := s.Drafts(ctx, 1); return err },
 		"DiscardDraft":     func(ctx context.Context) error { return s.DiscardDraft(ctx, ann, "a", 1) },
 		"SaveEquipment":    func(ctx context.Context) error { _, err := s.SaveEquipment(ctx, ann, e, ""); return err },

@@ -215,8 +215,10 @@ func TestSaveRevision_Repeated(t *testing.T) {
 	for name, change := range changes {
 		other := save
 		change(&other)
-		if _, err := a.SaveRevision(t.Context(), ann, other); !errors.Is(err, record.ErrConflict) {
-			t.Errorf("the same key with another %s: %v, want ErrConflict", name, err)
+		_, err := a.SaveRevision(t.Context(), ann, other)
+		used, ok := errors.AsType[*record.UsedError](err)
+		if !ok || used.Made != id || used.Number != 1 || !errors.Is(err, record.ErrConflict) {
+			t.Errorf("the same key with another %s: %v, want a UsedError of kind ErrConflict with %s, revision 1", name, err, id)
 		}
 	}
 	if _, err := a.Duplicate(t.Context(), ann, id, "", save.Request); !errors.Is(err, record.ErrConflict) {
@@ -260,18 +262,18 @@ func TestSaveRevision_Draft(t *testing.T) {
 		if _, err := s.Draft(t.Context(), d.ID); !errors.Is(err, record.ErrNotFound) {
 			t.Errorf("the draft is still there: %v", err)
 		}
-		if _, err := s.DraftOf(t.Context(), saved.Design); !errors.Is(err, record.ErrNotFound) {
-			t.Errorf("the design has a draft: %v", err)
+		if left, err := s.DraftsOf(t.Context(), saved.Design, 1); err != nil || len(left) > 0 {
+			t.Errorf("the design has %d drafts: %v", len(left), err)
 		}
 	})
 	t.Run("typed on meanwhile", func(t *testing.T) {
 		d := mustDraft(t, s, record.Draft{Fields: typed("House")})
 		newer := mustDraft(t, s, record.Draft{ID: d.ID, Version: d.Version, Fields: typed("House, second thoughts")})
 		saved := mustSave(t, s, store.Save{Frozen: sample(t, "House"), Draft: d.ID, DraftVersion: d.Version})
-		kept, err := s.DraftOf(t.Context(), saved.Design)
+		kept, err := s.DraftsOf(t.Context(), saved.Design, 9)
 		newer.Design = saved.Design
-		if diff := cmp.Diff(newer, kept); err != nil || diff != "" {
-			t.Errorf("DraftOf: %v, mismatch (-want +got)\n%s", err, diff)
+		if diff := cmp.Diff([]record.Draft{newer}, kept); err != nil || diff != "" {
+			t.Errorf("DraftsOf: %v, mismatch (-want +got)\n%s", err, diff)
 		}
 	})
 	t.Run("refused", func(t *testing.T) {
@@ -407,7 +409,6 @@ func TestRevision_NotFound(t *testing.T) {
 			"Restore":          func() error { return s.Restore(t.Context(), ann, id) },
 			"Duplicate":        func() error { _, err := s.Duplicate(t.Context(), ann, id, "", ""); return err },
 			"Draft":            func() error { _, err := s.Draft(t.Context(), id); return err },
-			"DraftOf":          func() error { _, err := s.DraftOf(t.Context(), id); return err },
 			"Equipment":        func() error { _, err := s.Equipment(t.Context(), id); return err },
 			"ArchiveEquipment": func() error { return s.ArchiveEquipment(t.Context(), ann, id) },
 			"RestoreEquipment": func() error { return s.RestoreEquipment(t.Context(), ann, id) },

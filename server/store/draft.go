@@ -94,15 +94,19 @@ func (s *Store) Draft(ctx context.Context, id record.ID) (d record.Draft, err er
 	return d, err
 }
 
-// DraftOf returns the draft of a saved design, the one saved last if there are
-// several.
-func (s *Store) DraftOf(ctx context.Context, design record.ID) (d record.Draft, err error) {
-	defer wrap(&err, "draft of design %q", design)
+// DraftsOf returns up to limit drafts of a saved design, and 200 at most, the one
+// saved last first. With "" they are those of designs that were never saved.
+func (s *Store) DraftsOf(ctx context.Context, design record.ID, limit int) (drafts []record.Draft, err error) {
+	defer wrap(&err, "drafts of design %q", design)
+	which, args := `design = $2`, []any{min(max(limit, 0), maxPageSize), clean(design)}
+	if design == "" {
+		which, args = `design is null`, args[:1]
+	}
 	err = s.read(ctx, func(ctx context.Context, conn *pgx.Conn) (err error) {
-		d, err = one(ctx, conn, scanDraft, `select `+draftColumns+` from draft where design = $1 order by saved_at desc, id desc limit 1`, clean(design))
+		drafts, err = all(ctx, conn, scanDraft, `select `+draftColumns+` from draft where `+which+` order by saved_at desc, id desc limit $1`, args...)
 		return err
 	})
-	return d, err
+	return drafts, err
 }
 
 // Drafts returns up to limit drafts, and 200 at most, the one saved last first.

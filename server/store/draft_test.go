@@ -7,6 +7,7 @@ import (
 	"testing"
 
 	"github.com/google/go-cmp/cmp"
+	"github.com/google/go-cmp/cmp/cmpopts"
 
 	"rimeline/server/record"
 	"rimeline/server/store"
@@ -120,20 +121,26 @@ func TestSaveDraft_Versions(t *testing.T) {
 	}
 }
 
-func TestDraftOf(t *testing.T) {
+func TestDraftsOf(t *testing.T) {
 	t.Parallel()
 	s := newStore(t)
 	saved := mustSave(t, s, store.Save{Frozen: sample(t, "House")})
 	loose := mustDraft(t, s, record.Draft{Fields: map[string]string{"a": "loose"}})
 	one := mustDraft(t, s, record.Draft{Design: saved.Design, Base: 1, Fields: map[string]string{"a": "1"}})
 	two := mustDraft(t, s, record.Draft{Design: saved.Design, Base: 1, Fields: map[string]string{"a": "2"}})
-	if d, err := s.DraftOf(t.Context(), saved.Design); err != nil || cmp.Diff(two, d) != "" {
-		t.Errorf("the one saved last is another: %v\n%s", err, cmp.Diff(two, d))
+	of := func(id record.ID, limit int, want ...record.Draft) {
+		t.Helper()
+		d, err := s.DraftsOf(t.Context(), id, limit)
+		if diff := cmp.Diff(want, d, cmpopts.EquateEmpty()); err != nil || diff != "" {
+			t.Errorf("DraftsOf(%q, %d): %v, mismatch (-want +got)\n%s", id, limit, err, diff)
+		}
 	}
+	of(saved.Design, 10, two, one)
+	of(saved.Design, 1, two)
+	of("", 10, loose)
+	of("no such design", 10)
 	one = mustDraft(t, s, one)
-	if d, err := s.DraftOf(t.Context(), saved.Design); err != nil || cmp.Diff(one, d) != "" {
-		t.Errorf("the one saved last is another: %v\n%s", err, cmp.Diff(one, d))
-	}
+	of(saved.Design, 10, one, two)
 	all, err := s.Drafts(t.Context(), 10)
 	if diff := cmp.Diff([]record.Draft{one, two, loose}, all); err != nil || diff != "" {
 		t.Errorf("Drafts: %v, mismatch (-want +got)\n%s", err, diff)

@@ -22,7 +22,7 @@ type done struct {
 }
 
 // claim notes that this transaction makes what is asked under a key. It returns what
-// an earlier one made if it was asked the same, and [record.ErrConflict] if that was
+// an earlier one made if it was asked the same, and a [*record.UsedError] if that was
 // asked something else. It waits for one that is still at work.
 func claim(ctx context.Context, tx pgx.Tx, actor record.Actor, key string, content [32]byte, makes done) (earlier *done, err error) {
 	if key == "" {
@@ -43,7 +43,7 @@ func claim(ctx context.Context, tx pgx.Tx, actor record.Actor, key string, conte
 			return nil, err
 		}
 		if !bytes.Equal(was, content[:]) {
-			return nil, fmt.Errorf("%w: the request key was used for something else", record.ErrConflict)
+			return nil, &record.UsedError{Made: record.ID(d.made), Number: d.number}
 		}
 		return &d, nil
 	}, `select content, made, number from save_request where actor = $1 and key = $2`, clean(actor.ID), clean(key))
