@@ -235,13 +235,7 @@ type tally struct {
 // TestEngineAgreesWithOracle compares every count, verdict, number and set of
 // checks on random designs.
 func TestEngineAgreesWithOracle(t *testing.T) {
-	designs := uint64(100_000)
-	switch {
-	case testing.Short():
-		designs = 2_000
-	case raceDetector:
-		designs = 5_000
-	}
+	designs := howMany(100_000, 2_000, 5_000)
 	defer debug.SetGCPercent(debug.SetGCPercent(2000)) // many small designs, nothing to keep
 
 	var mu sync.Mutex
@@ -284,6 +278,17 @@ func TestEngineAgreesWithOracle(t *testing.T) {
 		t.Errorf("%s: differs in %d of %d designs; at %s: engine %s, oracle %s\n%s",
 			kind, k.designs, designs, k.example.place, k.example.engine, k.example.oracle, indented(k.text))
 	}
+}
+
+// howMany designs to try: in a full run, in a short one, under the race detector.
+func howMany(full, short, race uint64) uint64 {
+	switch {
+	case testing.Short():
+		return short
+	case raceDetector:
+		return race
+	}
+	return full
 }
 
 // eachDesign calls f with the numbers below n, on every processor.

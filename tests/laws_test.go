@@ -20,10 +20,7 @@ type law func(d draw, doc object) error
 // holds tries a law on random designs and reports the shortest that breaks it.
 func holds(t *testing.T, l law) {
 	t.Helper()
-	designs := uint64(3_000)
-	if testing.Short() || raceDetector {
-		designs = 300
-	}
+	designs := howMany(1_500, 300, 100)
 	var mu sync.Mutex
 	var broken int
 	var shortest []byte

@@ -150,10 +150,7 @@ func (w *working) misprints() map[string][]string {
 
 // TestPrintedLines recomputes every line of the working from its own text.
 func TestPrintedLines(t *testing.T) {
-	designs := uint64(6_000)
-	if testing.Short() || raceDetector {
-		designs = 500
-	}
+	designs := howMany(4_000, 500, 150)
 	var mu sync.Mutex
 	seen := map[string]int{}
 	lines := func(name string, text []byte) {

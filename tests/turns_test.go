@@ -145,10 +145,7 @@ func openQuestions(questions []question) []string {
 // designs, some of each random design.
 func TestTurns(t *testing.T) {
 	const ofEach = 6
-	designs := uint64(2_500)
-	if testing.Short() || raceDetector {
-		designs = 150
-	}
+	designs := howMany(1_500, 150, 40)
 	var mu sync.Mutex
 	outcomes := map[turnOutcome]int{}
 	type failure struct {
