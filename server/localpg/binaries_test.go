@@ -4,6 +4,8 @@ package localpg
 
 import (
 	"errors"
+	"fmt"
+	"io"
 	"log/slog"
 	"slices"
 	"strings"
@@ -126,5 +128,31 @@ func TestLevelOf(t *testing.T) {
 		if got := levelOf(line); got != want {
 			t.Errorf("%q: %v, want %v", line, got, want)
 		}
+	}
+}
+
+// TestFollow: everything is read, however long the lines; what explains a failure is
+// kept, the last of it, and not what is over.
+func TestFollow(t *testing.T) {
+	reading, writing := io.Pipe()
+	o := follow(reading, slog.New(slog.DiscardHandler))
+	write := func(text string) {
+		if _, err := io.WriteString(writing, text); err != nil {
+			t.Fatal(err)
+		}
+	}
+	write("FATAL:  over\n" + strings.Repeat("long", 10_000) + "\n")
+	write("LOG:  nothing special\n") // read when the lines before are noted
+	o.forget()
+	for n := range 2 * keptLines {
+		write(fmt.Sprintf("FATAL:  number %d\n", n))
+	}
+	write("LOG:  nothing special\n")
+	if err := writing.Close(); err != nil {
+		t.Fatal(err)
+	}
+	want := "FATAL:  number 5 FATAL:  number 6 FATAL:  number 7 FATAL:  number 8 FATAL:  number 9"
+	if got := o.complaints(); got != want {
+		t.Errorf("%q, want %q", got, want)
 	}
 }

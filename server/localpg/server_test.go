@@ -113,6 +113,17 @@ func (o *owner) ready(t *testing.T) int {
 	return pid
 }
 
+// stop has the owner stop its server in order.
+func (o *owner) stop(t *testing.T) {
+	t.Helper()
+	if err := o.stdin.Close(); err != nil {
+		t.Fatal(err)
+	}
+	if said := o.says(); said != "stopped" {
+		t.Fatalf("the owner says %q", said)
+	}
+}
+
 func (o *owner) kill() {
 	_ = o.cmd.Process.Kill()
 	_ = o.cmd.Wait()
@@ -419,12 +430,7 @@ func TestStart_OneOwner(t *testing.T) {
 	stop(t, s)
 	o := startOwner(t, dir, nil)
 	o.ready(t)
-	if err := o.stdin.Close(); err != nil {
-		t.Fatal(err)
-	}
-	if said := o.says(); said != "stopped" {
-		t.Errorf("the owner after us says %q", said)
-	}
+	o.stop(t)
 }
 
 // changes notes what OnChange is told.
@@ -470,36 +476,6 @@ func TestSupervise_PostmasterKilled(t *testing.T) {
 		if down != nil && !strings.Contains(down.Error(), "killed") {
 			t.Errorf("the reason does not say how it died: %v", down)
 		}
-	}
-}
-
-// TestSupervise_BusyProcessLeft: a process that computes does not notice that its
-// postmaster is gone, and PostgreSQL does not start while it uses the data.
-func TestSupervise_BusyProcessLeft(t *testing.T) {
-	t.Parallel()
-	if runtime.GOOS != "linux" {
-		t.Skip("elsewhere such a process cannot be told from others; the server is back when it ends")
-	}
-	s := start(t, Options{Dir: usedDir(t)})
-	conn := connect(t, s.DSN())
-	busy := int(conn.PgConn().PID())
-	result := make(chan error, 1)
-	go func() {
-		_, err := conn.Exec(context.WithoutCancel(t.Context()), "do $$ begin loop end loop; end $$")
-		result <- err
-	}()
-	watch := connect(t, s.DSN())
-	until(t, "it computes", func() bool {
-		return query[int](t, watch, "select count(*) from pg_stat_activity where state = 'active' and query like 'do %'") == 1
-	})
-	pid := s.PID()
-	kill(t, pid)
-	until(t, "another postmaster answers", func() bool { return s.PID() != pid && s.PID() != 0 })
-	if running(busy) {
-		t.Errorf("process %d works on the data of another postmaster", busy)
-	}
-	if err := <-result; err == nil {
-		t.Error("the endless statement ended")
 	}
 }
 
@@ -875,19 +851,16 @@ func TestStart_AsSomeUser(t *testing.T) {
 	if _, err := pgx.ConnectConfig(t.Context(), config); err == nil || !strings.Contains(strings.ToLower(err.Error()), "peer") {
 		t.Errorf("somebody else is let in: %v", err)
 	}
-	if err := first.stdin.Close(); err != nil {
-		t.Fatal(err)
-	}
-	if said := first.says(); said != "stopped" {
-		t.Fatalf("it says %q", said)
-	}
+	first.stop(t)
 	s := start(t, Options{Dir: dir})
 	if s.user.uid != u.uid {
 		t.Errorf("root runs PostgreSQL as %s, want the owner of the data, %s", s.user.name, u.name)
 	}
 	exec1(t, connect(t, s.DSN()), "create table note (n int)")
 	stop(t, s)
-	startOwner(t, dir, u.credential()).ready(t)
+	again := startOwner(t, dir, u.credential())
+	again.ready(t)
+	again.stop(t)
 }
 
 // TestStart_NotOurs: a user is told whom a directory belongs to.

@@ -38,6 +38,7 @@ func serversOn(p place) ([]serverProcess, error) {
 // be a server on our data: an administrator may have started one with another spelling
 // of the directory.
 func mayServe(pid int) bool {
-	out, err := exec.Command("ps", "-p", strconv.Itoa(pid), "-o", "comm=").Output()
-	return err == nil && bytes.Contains(out, []byte("postgres"))
+	out, err := exec.Command("ps", "-p", strconv.Itoa(pid), "-o", "stat=", "-o", "comm=").Output()
+	ended := bytes.HasPrefix(bytes.TrimSpace(out), []byte("Z")) // its parent has not asked how
+	return err == nil && !ended && bytes.Contains(out, []byte("postgres"))
 }
