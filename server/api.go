@@ -14,28 +14,44 @@ import (
 
 // apiSize answers one design with its result, whatever the verdict.
 func (s *Server) apiSize(w http.ResponseWriter, r *http.Request) error {
-	if err := requireJSON(r); err != nil {
+	d, err := postedDesign(r)
+	if err != nil {
 		return err
 	}
-	doc := design.Read(visitOf(r).body)
-	if doc.Design == nil {
-		status, detail := http.StatusUnprocessableEntity, "The design was refused; errors lists every reason."
-		if doc.Malformed {
-			status, detail = http.StatusBadRequest, "What was sent is not one JSON document; errors says where it goes wrong."
-		}
-		writeProblem(w, problem{
-			Status: status, Detail: detail, RequestID: visitOf(r).requestID,
-			Errors: design.AppendFaults(nil, doc.Faults),
-		})
-		return nil
-	}
-	body := make([]byte, 0, 64<<10) // most results fit
-	body = append(sizing.Size(doc.Design).AppendJSON(body), '\n')
+	body := append(sizing.Size(d).AppendJSON(nil), '\n')
 	w.Header().Set("Content-Type", "application/json")
 	w.Header().Set("Cache-Control", "no-store")
 	w.Header().Set("Content-Length", strconv.Itoa(len(body)))
 	_, _ = w.Write(body)
 	return nil
+}
+
+// postedDesign reads the design that a request carries.
+func postedDesign(r *http.Request) (*design.Design, error) {
+	if err := requireJSON(r); err != nil {
+		return nil, err
+	}
+	doc := design.Read(visitOf(r).body)
+	switch {
+	case doc.Malformed:
+		return nil, malformed(doc.Faults)
+	case doc.Design == nil:
+		return nil, refused("The design was refused; errors lists every reason.", doc.Faults)
+	}
+	return doc.Design, nil
+}
+
+// malformed is a body that is not JSON.
+func malformed(faults design.Faults) error {
+	return &statusError{
+		status: http.StatusBadRequest, faults: faults,
+		message: "What was sent is not one JSON document; errors says where it goes wrong.",
+	}
+}
+
+// refused is a body with faults.
+func refused(message string, faults design.Faults) error {
+	return &statusError{status: http.StatusUnprocessableEntity, faults: faults, message: message}
 }
 
 // unlabelled are the content types that clients put on a body which they know

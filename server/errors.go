@@ -13,6 +13,7 @@ import (
 
 	"github.com/go-chi/chi/v5"
 
+	"rimeline/sizing/design"
 	"rimeline/views"
 )
 
@@ -23,6 +24,7 @@ type statusError struct {
 	cause   error             // for the log; nil if the message says it all
 	header  map[string]string // further headers of the answer
 	heading string            // of the page; "" is what the status means
+	faults  design.Faults     // every reason why a document is refused
 	newest  int64             // the number of what is newest, where the request rests on what is not; else 0
 }
 
@@ -105,7 +107,11 @@ func (s *Server) serveError(w http.ResponseWriter, r *http.Request, err error) {
 		w.Header().Set(name, value)
 	}
 	if forProgram {
-		writeProblem(w, problem{Status: f.status, Detail: f.message, RequestID: id, Newest: f.newest})
+		p := problem{Status: f.status, Detail: f.message, RequestID: id, Newest: f.newest}
+		if f.faults != nil {
+			p.Errors = design.AppendFaults(nil, f.faults)
+		}
+		writeProblem(w, p)
 		return
 	}
 	heading := cmp.Or(f.heading, failureHeading(f.status))
@@ -142,8 +148,8 @@ type problem struct {
 	Status    int             `json:"status"`
 	Detail    string          `json:"detail"`
 	RequestID string          `json:"request_id,omitempty"`
-	Newest    int64           `json:"newest,omitempty"` // with 412: the number of the newest revision or version
-	Errors    json.RawMessage `json:"errors,omitempty"` // every reason why a document is refused
+	Newest    int64           `json:"newest,omitempty"` // as in statusError.newest
+	Errors    json.RawMessage `json:"errors,omitempty"` // as in statusError.faults
 }
 
 func writeProblem(w http.ResponseWriter, p problem) {

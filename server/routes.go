@@ -16,6 +16,7 @@ func (s *Server) routes() chi.Router {
 	r.MethodNotAllowed(s.handle(methodNotAllowed(r)))
 
 	r.Get("/healthz", s.handle(s.health))
+	r.Get("/readyz", s.handle(s.ready))
 	r.With(compress).Get("/static/{file}", s.handle(s.staticFile))
 
 	r.Group(func(r chi.Router) {
@@ -31,7 +32,24 @@ func (s *Server) routes() chi.Router {
 		r.Post("/design/file", s.handle(s.saveFile))       // the design as a file to keep
 		r.Post("/design/open", s.handle(s.openFile))       // such a file, back into the form
 
+		r.Get("/api/openapi.json", s.handle(s.apiDescription))
 		r.Post("/api/v1/size", s.handle(s.apiSize))
+
+		r.Get("/api/v1/designs", s.handle(s.withSaving(s.apiDesigns)))
+		r.Post("/api/v1/designs", s.handle(s.withSaving(s.apiAddDesign)))
+		r.Get("/api/v1/designs/{id}", s.handle(s.withSaving(s.apiDesign)))
+		r.Put("/api/v1/designs/{id}", s.handle(s.withSaving(s.apiReviseDesign)))
+		r.Delete("/api/v1/designs/{id}", s.handle(s.withSaving(s.apiArchiveDesign)))
+		r.Post("/api/v1/designs/{id}/restore", s.handle(s.withSaving(s.apiRestoreDesign)))
+		r.Get("/api/v1/designs/{id}/revisions", s.handle(s.withSaving(s.apiRevisions)))
+		r.Get("/api/v1/designs/{id}/revisions/{n}", s.handle(s.withSaving(s.apiRevision)))
+
+		r.Get("/api/v1/equipment", s.handle(s.withSaving(s.apiEquipmentList)))
+		r.Post("/api/v1/equipment", s.handle(s.withSaving(s.apiAddEquipment)))
+		r.Get("/api/v1/equipment/{id}", s.handle(s.withSaving(s.apiEquipment)))
+		r.Put("/api/v1/equipment/{id}", s.handle(s.withSaving(s.apiReviseEquipment)))
+		r.Delete("/api/v1/equipment/{id}", s.handle(s.withSaving(s.apiArchiveEquipment)))
+		r.Post("/api/v1/equipment/{id}/restore", s.handle(s.withSaving(s.apiRestoreEquipment)))
 	})
 	return r
 }

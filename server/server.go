@@ -13,6 +13,7 @@ import (
 	"log/slog"
 	"net"
 	"net/http"
+	"sync"
 	"time"
 )
 
@@ -69,6 +70,8 @@ type Server struct {
 	log    *slog.Logger
 	places chan struct{} // holds one element for each request at work
 	router http.Handler
+
+	underWay sync.Map // keys of the requests at work that are to be done once
 }
 
 // New makes the server that cfg describes.

@@ -8,9 +8,9 @@ import (
 )
 
 // ReadEquipment reads a module or an inverter as it stands in a design, but without
-// its id, which the design gives it. It returns the equipment with its canonical
-// document, maker and model, or every reason why it is refused; their pointers are
-// those inside the document.
+// its id, which the design gives it, and with a model, by which it is found again. It
+// returns the equipment with its canonical document, maker and model, or every reason
+// why it is refused; their pointers are those inside the document.
 func ReadEquipment(kind Kind, document []byte) (Equipment, design.Faults) {
 	e := Equipment{Kind: kind}
 	var faults design.Faults
@@ -30,6 +30,12 @@ func ReadEquipment(kind Kind, document []byte) (Equipment, design.Faults) {
 	}
 	if faults != nil {
 		return Equipment{}, withoutID(faults)
+	}
+	if strings.TrimSpace(e.Model) == "" {
+		return Equipment{}, design.Faults{{
+			Pointer: "/model", Found: "no model", Expected: "the model's name, as its datasheet has it",
+			Detail: "What is kept is found again by its model; enter it.",
+		}}
 	}
 	return e, nil
 }

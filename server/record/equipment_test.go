@@ -83,6 +83,7 @@ func TestReadEquipment_Refused(t *testing.T) {
 	}{
 		{"a value that cannot be", change(module, `"voc_v":37.32`, `"voc_v":30`), KindModule, []string{"/voc_v"}},
 		{"two of them, one inside a list", change(change(inverter, `"mppt_max_v":850`, `"mppt_max_v":"850"`), `"back_feed_a":0.5`, `"back_feed_a":-1`), KindInverter, []string{"/back_feed_a", "/trackers/0/mppt_max_v"}},
+		{"no model", change(module, `"model":"TD-410B"`, `"model":" "`), KindModule, []string{"/model"}},
 		{"an unknown field", change(module, `"voc_v"`, `"voc"`), KindModule, []string{"/voc", "/voc_v"}},
 		{"an id", change(module, `{`, `{"id":"m1",`), KindModule, []string{"/id"}},
 		{"an id in capitals", change(module, `{`, `{"ID":"m1",`), KindModule, []string{"/ID"}},
