@@ -48,6 +48,7 @@ type savedEquipment interface {
 	ArchiveEquipment(ctx context.Context, actor record.Actor, id record.ID) error
 	RestoreEquipment(ctx context.Context, actor record.Actor, id record.ID) error
 	WhereUsed(ctx context.Context, kind record.Kind, maker, model string, limit int) ([]record.Design, error)
+	UseCounts(ctx context.Context, pieces []record.Use) ([]int, error)
 }
 
 type keptAnswers interface {
