@@ -82,14 +82,6 @@ func (w *writer) count(name string, n int64) {
 	w.dst = strconv.AppendInt(w.dst, n, 10)
 }
 
-func (w *writer) countOrNull(name string, n *int64) {
-	if n == nil {
-		w.null(name)
-		return
-	}
-	w.count(name, *n)
-}
-
 func (w *writer) truth(name string, is bool) {
 	w.name(name)
 	w.dst = strconv.AppendBool(w.dst, is)
@@ -120,9 +112,9 @@ func (w *writer) limit(l *Limit) {
 	w.text("voltage_ceiling_from", l.VoltageCeilingFrom)
 	w.number("module_voc_cold_v", l.ModuleVocColdV)
 	w.number("module_vmp_hot_v", l.ModuleVmpHotV)
-	w.count("max_modules", l.MaxModules)
-	w.countOrNull("min_modules", l.MinModules)
-	w.countOrNull("min_modules_start", l.MinModulesStart)
+	w.number("max_modules", l.Counted.MaxModules)
+	w.numberOrNull("min_modules", l.Counted.MinModules)
+	w.numberOrNull("min_modules_start", l.Counted.MinModulesStart)
 	w.count("max_strings", l.MaxStrings)
 	w.text("max_strings_from", l.MaxStringsFrom)
 	w.numberOrNull("reached_at_c", l.ReachedAtC)

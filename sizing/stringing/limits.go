@@ -21,8 +21,12 @@ type Limit struct {
 	MaxModules      int64
 	MinModules      *int64 // nil where one module's hot voltage is not above 0
 	MinModulesStart *int64 // nil where no start voltage is stated, or one module's hot voltage is not above 0
-	MaxStrings      int64
-	MaxStringsFrom  string // "inputs", "short-circuit" or "inputs-unconfirmed"
+	// The three counts without the bound of a machine word, at which those above stop:
+	// a module of next to no voltage fits more often than that.
+	Counted Counts
+
+	MaxStrings     int64
+	MaxStringsFrom string // "inputs", "short-circuit" or "inputs-unconfirmed"
 
 	// ReachedAtC is the temperature at which MaxModules modules would meet the
 	// ceiling; nil below −60 °C, where no row of the table breaks it, and for no module.
@@ -44,9 +48,11 @@ func (a *Array) Limit(plane, inverter, tracker int) Limit {
 		Plane: d.Planes[plane].ID, Inverter: d.Inverters[inverter].ID, Tracker: d.Inverters[inverter].Trackers[tracker].ID,
 		VoltageCeilingV: ceiling.Value(), Ceiling: entries,
 		ModuleVocColdV: v.vocCold.Value(), ModuleVmpHotV: v.vmpHot.Value(),
-		MaxModules: mostWithin(v.vocCold.Value(), ceiling.Value()),
-		MinModules: fewestReaching(v.vmpHot.Value(), k.MPPTMin.Value()),
-		Cites:      a.cites.ceiling,
+		Counted: Counts{
+			MaxModules: mostWithin(v.vocCold.Value(), ceiling.Value()),
+			MinModules: fewestReaching(v.vmpHot.Value(), k.MPPTMin.Value()),
+		},
+		Cites: a.cites.ceiling,
 	}
 	for _, e := range entries {
 		if e.Governs {
@@ -57,9 +63,10 @@ func (a *Array) Limit(plane, inverter, tracker int) Limit {
 	terms := append([]*working.Term{ceiling}, v.coldSteps...)
 	terms = append(terms, a.hotSteps(v)...)
 	if start := a.terms.Inverters[inverter].Start; start != nil {
-		row.MinModulesStart = fewestReaching(v.vocHot.Value(), start.Value())
+		row.Counted.MinModulesStart = fewestReaching(v.vocHot.Value(), start.Value())
 		terms = append(terms, v.vocHot)
 	}
+	row.MaxModules, row.MinModules, row.MinModulesStart = row.Counted.words()
 	row.Steps = shown(append(terms, countTerms(v, ceiling, k.MPPTMin)...)...)
 	if row.MaxModules > 0 {
 		row.ReachedAtC, _ = a.reachedAt(v, working.Whole(row.MaxModules), ceiling)
@@ -68,25 +75,39 @@ func (a *Array) Limit(plane, inverter, tracker int) Limit {
 	return row
 }
 
-// mostWithin returns the greatest n for which n × each does not exceed limit; each is above 0.
-func mostWithin(each, limit quantity.Exact) int64 {
-	n, fits := limit.Quo(each).Floor().Int64()
-	if !fits {
-		return math.MaxInt64
-	}
-	return n
+// Counts are counts of modules in series, whole numbers of any size; nil as in [Limit].
+type Counts struct {
+	MaxModules                  quantity.Exact
+	MinModules, MinModulesStart *quantity.Exact
 }
 
+func (c *Counts) words() (most int64, fewest, start *int64) {
+	word := func(n *quantity.Exact) *int64 {
+		if n == nil {
+			return nil
+		}
+		return new(machineWord(*n))
+	}
+	return machineWord(c.MaxModules), word(c.MinModules), word(c.MinModulesStart)
+}
+
+// machineWord returns a whole number of modules, the greatest word if it is beyond.
+func machineWord(n quantity.Exact) int64 {
+	if word, fits := n.Int64(); fits {
+		return word
+	}
+	return math.MaxInt64
+}
+
+// mostWithin returns the greatest n for which n × each does not exceed limit; each is above 0.
+func mostWithin(each, limit quantity.Exact) quantity.Exact { return limit.Quo(each).Floor() }
+
 // fewestReaching returns the least n ≥ 1 for which n × each reaches limit; nil where each is not above 0.
-func fewestReaching(each, limit quantity.Exact) *int64 {
+func fewestReaching(each, limit quantity.Exact) *quantity.Exact {
 	if each.Sign() <= 0 {
 		return nil
 	}
-	n, fits := limit.Quo(each).Ceil().Int64()
-	if !fits {
-		n = math.MaxInt64
-	}
-	return new(max(n, 1))
+	return new(quantity.Max(limit.Quo(each).Ceil(), quantity.Int(1)))
 }
 
 // countTerms shows the two counts as roundings of quotients, which in exact numbers
@@ -110,7 +131,7 @@ func (a *Array) mostStrings(v *plane, k *design.TrackerTerms) (int64, string) {
 	if k.MaxShortCircuit == nil {
 		return inputs, "inputs-unconfirmed"
 	}
-	if n := mostWithin(each, k.MaxShortCircuit.Value()); n < inputs {
+	if n := machineWord(mostWithin(each, k.MaxShortCircuit.Value())); n < inputs {
 		return n, "short-circuit"
 	}
 	return inputs, "inputs"
