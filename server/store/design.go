@@ -189,12 +189,10 @@ func addRevision(ctx context.Context, tx pgx.Tx, actor record.Actor, id record.I
 const designColumns = `id, title, site, revision, verdict::text, headroom_c::text,
 	created_at, created_by, created_by_name, updated_at, updated_by, updated_by_name, archived_at`
 
-func scanDesign(row pgx.CollectableRow, more ...any) (d record.Design, err error) {
+func scanDesign(row pgx.CollectableRow) (d record.Design, err error) {
 	var verdict, headroom string
-	err = row.Scan(append([]any{
-		&d.ID, &d.Title, &d.Site, &d.Revision, &verdict, &headroom,
-		&d.Created.At, &d.Created.By.ID, &d.Created.By.Name, &d.Updated.At, &d.Updated.By.ID, &d.Updated.By.Name, &d.ArchivedAt,
-	}, more...)...)
+	err = row.Scan(&d.ID, &d.Title, &d.Site, &d.Revision, &verdict, &headroom,
+		&d.Created.At, &d.Created.By.ID, &d.Created.By.Name, &d.Updated.At, &d.Updated.By.ID, &d.Updated.By.Name, &d.ArchivedAt)
 	if err != nil {
 		return d, err
 	}
@@ -205,13 +203,11 @@ func scanDesign(row pgx.CollectableRow, more ...any) (d record.Design, err error
 	return d, err
 }
 
-func designRow(row pgx.CollectableRow) (record.Design, error) { return scanDesign(row) }
-
 // Design returns a design as lists show it, also an archived one.
 func (s *Store) Design(ctx context.Context, id record.ID) (d record.Design, err error) {
 	defer wrap(&err, "design %q", id)
 	err = s.read(ctx, func(ctx context.Context, conn *pgx.Conn) (err error) {
-		d, err = one(ctx, conn, designRow, `select `+designColumns+` from design where id = $1`, clean(id))
+		d, err = one(ctx, conn, scanDesign, `select `+designColumns+` from design where id = $1`, clean(id))
 		return err
 	})
 	return d, err
@@ -357,7 +353,7 @@ func (s *Store) Duplicate(ctx context.Context, actor record.Actor, id record.ID,
 				return err
 			}
 		}
-		d, err = one(ctx, tx, designRow, `select `+designColumns+` from design where id = $1`, clean(made))
+		d, err = one(ctx, tx, scanDesign, `select `+designColumns+` from design where id = $1`, clean(made))
 		return err
 	})
 	return d, err
@@ -384,7 +380,7 @@ func retitled(f record.Frozen, title string) (record.Frozen, error) {
 func (s *Store) WhereUsed(ctx context.Context, kind record.Kind, maker, model string, limit int) (designs []record.Design, err error) {
 	defer wrap(&err, "where %s %s %s is used", kind, maker, model)
 	err = s.read(ctx, func(ctx context.Context, conn *pgx.Conn) (err error) {
-		designs, err = all(ctx, conn, designRow, `
+		designs, err = all(ctx, conn, scanDesign, `
 			select `+designColumns+` from design
 			where exists (
 				select 1 from revision_use u

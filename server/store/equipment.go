@@ -46,7 +46,7 @@ func (s *Store) SaveEquipment(ctx context.Context, actor record.Actor, e record.
 			saved, err = equipment(ctx, tx, record.ID(earlier.made))
 			return err
 		}
-		found, err := all(ctx, tx, equipmentRow, sql, pgx.StrictNamedArgs{
+		found, err := all(ctx, tx, scanEquipment, sql, pgx.StrictNamedArgs{
 			"id": clean(id), "kind": clean(e.Kind), "maker": short(e.Maker), "model": short(e.Model),
 			"document": e.Document, "sources": sources, "answers": answers, "note": clean(e.Note), "version": e.Version,
 			"words": tsvector(record.Words(e.Maker, e.Model)),
@@ -71,13 +71,11 @@ func (s *Store) SaveEquipment(ctx context.Context, actor record.Actor, e record.
 const equipmentColumns = `id, kind, maker, model, document, sources, answers, note, version,
 	created_at, created_by, created_by_name, updated_at, updated_by, updated_by_name, archived_at`
 
-func scanEquipment(row pgx.CollectableRow, more ...any) (e record.Equipment, err error) {
+func scanEquipment(row pgx.CollectableRow) (e record.Equipment, err error) {
 	var sources string
 	var answers []byte
-	err = row.Scan(append([]any{
-		&e.ID, &e.Kind, &e.Maker, &e.Model, &e.Document, &sources, &answers, &e.Note, &e.Version,
-		&e.Created.At, &e.Created.By.ID, &e.Created.By.Name, &e.Updated.At, &e.Updated.By.ID, &e.Updated.By.Name, &e.ArchivedAt,
-	}, more...)...)
+	err = row.Scan(&e.ID, &e.Kind, &e.Maker, &e.Model, &e.Document, &sources, &answers, &e.Note, &e.Version,
+		&e.Created.At, &e.Created.By.ID, &e.Created.By.Name, &e.Updated.At, &e.Updated.By.ID, &e.Updated.By.Name, &e.ArchivedAt)
 	if err != nil {
 		return e, err
 	}
@@ -88,10 +86,8 @@ func scanEquipment(row pgx.CollectableRow, more ...any) (e record.Equipment, err
 	return e, err
 }
 
-func equipmentRow(row pgx.CollectableRow) (record.Equipment, error) { return scanEquipment(row) }
-
 func equipment(ctx context.Context, db querier, id record.ID) (record.Equipment, error) {
-	return one(ctx, db, equipmentRow, `select `+equipmentColumns+` from equipment where id = $1`, clean(id))
+	return one(ctx, db, scanEquipment, `select `+equipmentColumns+` from equipment where id = $1`, clean(id))
 }
 
 // Equipment returns a module or inverter, also an archived one.

@@ -9,6 +9,7 @@ import (
 	"fmt"
 	"slices"
 	"strings"
+	"time"
 
 	"github.com/jackc/pgx/v5"
 	"github.com/jackc/pgx/v5/pgconn"
@@ -23,21 +24,27 @@ const (
 
 // order is an order of a list: by its keys, all of them rising, or all falling. The
 // last key is different in every row. An index has them in this order.
-type order struct {
-	keys    []key
+type order[T any] struct {
+	keys    []key[T]
 	falling bool
 }
 
-type key struct{ column, kind string }
+// key is a column that a list is sorted by, its type, and the text of its value in an
+// entry, which the type reads.
+type key[T any] struct {
+	column, kind string
+	of           func(T) string
+}
 
 // list is a question for a page of a table.
-type list struct {
+type list[T any] struct {
 	table      string
 	columns    string
+	scan       pgx.RowToFunc[T]
 	conditions []string
 	args       pgx.StrictNamedArgs
 	sort       record.Sort
-	order      order
+	order      order[T]
 	reversed   bool
 	cursor     string
 	limit      int
@@ -69,7 +76,7 @@ func (c cursor) String() string {
 }
 
 // readCursor reads a cursor of this list.
-func (l *list) readCursor() (c cursor, err error) {
+func (l *list[T]) readCursor() (c cursor, err error) {
 	text, err := base64.RawURLEncoding.DecodeString(l.cursor)
 	if err == nil {
 		err = json.Unmarshal(text, &c)
@@ -85,7 +92,7 @@ func (l *list) readCursor() (c cursor, err error) {
 
 // fetch answers a list. Paging costs the same on every page, and a row that comes or
 // goes meanwhile makes no other row appear twice or be passed over.
-func fetch[T any](ctx context.Context, s *Store, l list, scan func(row pgx.CollectableRow, more ...any) (T, error)) (page[T], error) {
+func fetch[T any](ctx context.Context, s *Store, l list[T]) (page[T], error) {
 	if l.limit <= 0 {
 		l.limit = pageSize
 	}
@@ -101,18 +108,11 @@ func fetch[T any](ctx context.Context, s *Store, l list, scan func(row pgx.Colle
 		l.table, strings.Join(l.conditions, " and "), record.CountedTo+1)
 	query, args := l.sql(from)
 	var p page[T]
-	var keys [][]string
 	err := s.read(ctx, func(ctx context.Context, conn *pgx.Conn) error {
-		keys = nil
 		var batch pgx.Batch
 		batch.Queue(count, l.args).QueryRow(func(row pgx.Row) error { return row.Scan(&p.total) })
 		batch.Queue(query, args).Query(func(rows pgx.Rows) (err error) {
-			p.rows, err = pgx.CollectRows(rows, func(row pgx.CollectableRow) (T, error) {
-				var at []string
-				entry, err := scan(row, &at)
-				keys = append(keys, at)
-				return entry, err
-			})
+			p.rows, err = pgx.CollectRows(rows, l.scan)
 			return err
 		})
 		return conn.SendBatch(ctx, &batch).Close()
@@ -128,43 +128,50 @@ func fetch[T any](ctx context.Context, s *Store, l list, scan func(row pgx.Colle
 	}
 	further := len(p.rows) > l.limit
 	if further {
-		p.rows, keys = p.rows[:l.limit], keys[:l.limit]
+		p.rows = p.rows[:l.limit]
 	}
 	if from.Before {
 		if !further { // this is the first page; show it in full
 			l.cursor = ""
-			return fetch(ctx, s, l, scan)
+			return fetch(ctx, s, l)
 		}
 		slices.Reverse(p.rows)
-		slices.Reverse(keys)
 	}
-	place := func(keys []string, before bool) string {
-		return cursor{Sort: l.sort, Reversed: l.reversed, Before: before, Keys: keys}.String()
+	if n := len(p.rows); n > 0 && (further || from.Before) {
+		p.next = l.place(l.keysOf(p.rows[n-1]), false)
 	}
-	if len(p.rows) == 0 {
-		if l.cursor != "" {
-			p.previous = place(from.Keys, true)
-		}
-		return p, nil
-	}
-	if further || from.Before {
-		p.next = place(keys[len(keys)-1], false)
-	}
-	if l.cursor != "" {
-		p.previous = place(keys[0], true)
+	switch {
+	case l.cursor == "":
+	case len(p.rows) == 0:
+		p.previous = l.place(from.Keys, true)
+	default:
+		p.previous = l.place(l.keysOf(p.rows[0]), true)
 	}
 	return p, nil
 }
 
+func (l *list[T]) keysOf(entry T) []string {
+	texts := make([]string, len(l.order.keys))
+	for i, k := range l.order.keys {
+		texts[i] = k.of(entry)
+	}
+	return texts
+}
+
+// place returns the cursor behind the entry with these keys, or before it.
+func (l *list[T]) place(keys []string, before bool) string {
+	return cursor{Sort: l.sort, Reversed: l.reversed, Before: before, Keys: keys}.String()
+}
+
 // sql returns the query of one page, of one row more than it has, and in the
 // opposite order if it is the page before the cursor.
-func (l *list) sql(from cursor) (string, pgx.StrictNamedArgs) {
+func (l *list[T]) sql(from cursor) (string, pgx.StrictNamedArgs) {
 	falling := l.order.falling != l.reversed != from.Before
 	way, beyond := "asc", ">"
 	if falling {
 		way, beyond = "desc", "<"
 	}
-	var columns, texts, given, by []string
+	var columns, given, by []string
 	args := pgx.StrictNamedArgs{}
 	for name, value := range l.args {
 		args[name] = value
@@ -172,7 +179,6 @@ func (l *list) sql(from cursor) (string, pgx.StrictNamedArgs) {
 	for i, k := range l.order.keys {
 		column := l.table + "." + k.column // alone, it would be the column of the answer, which is a text
 		columns = append(columns, column)
-		texts = append(texts, column+"::text")
 		by = append(by, column+" "+way)
 		if from.Keys != nil {
 			name := fmt.Sprintf("from%d", i)
@@ -184,23 +190,28 @@ func (l *list) sql(from cursor) (string, pgx.StrictNamedArgs) {
 	if from.Keys != nil {
 		conditions = append(conditions, fmt.Sprintf("(%s) %s (%s)", strings.Join(columns, ", "), beyond, strings.Join(given, ", ")))
 	}
-	return fmt.Sprintf("select %s, array[%s] from %s where %s order by %s limit %d",
-		l.columns, strings.Join(texts, ", "), l.table, strings.Join(conditions, " and "), strings.Join(by, ", "), l.limit+1), args
+	return fmt.Sprintf("select %s from %s where %s order by %s limit %d",
+		l.columns, l.table, strings.Join(conditions, " and "), strings.Join(by, ", "), l.limit+1), args
 }
 
+var (
+	designID      = key[record.Design]{"id", "text", func(d record.Design) string { return string(d.ID) }}
+	designUpdated = key[record.Design]{"updated_at", "timestamptz", func(d record.Design) string { return instant(d.Updated.At) }}
+)
+
 // designOrders are the orders of the list of designs.
-var designOrders = map[record.Sort]order{
-	record.SortUpdated:  {keys: []key{{"updated_at", "timestamptz"}, {"id", "text"}}, falling: true},
-	record.SortTitle:    {keys: []key{{"title", "text"}, {"id", "text"}}},
-	record.SortVerdict:  {keys: []key{{"verdict", "verdict"}, {"updated_at", "timestamptz"}, {"id", "text"}}, falling: true},
-	record.SortHeadroom: {keys: []key{{"headroom_c", "numeric"}, {"id", "text"}}},
+var designOrders = map[record.Sort]order[record.Design]{
+	record.SortUpdated:  {[]key[record.Design]{designUpdated, designID}, true},
+	record.SortTitle:    {[]key[record.Design]{{"title", "text", func(d record.Design) string { return d.Title }}, designID}, false},
+	record.SortVerdict:  {[]key[record.Design]{{"verdict", "verdict", func(d record.Design) string { return d.Verdict.String() }}, designUpdated, designID}, true},
+	record.SortHeadroom: {[]key[record.Design]{{"headroom_c", "numeric", func(d record.Design) string { return encodeHeadroom(d.HeadroomC) }}, designID}, false},
 }
 
 // Designs returns a page of the saved designs.
 func (s *Store) Designs(ctx context.Context, ask record.Listing) (found record.DesignPage, err error) {
 	defer wrap(&err, "list designs")
-	l := list{
-		table: "design", columns: designColumns, args: pgx.StrictNamedArgs{},
+	l := list[record.Design]{
+		table: "design", columns: designColumns, scan: scanDesign, args: pgx.StrictNamedArgs{},
 		sort: cmp.Or(ask.Sort, record.SortUpdated), reversed: ask.Reversed, cursor: ask.Cursor, limit: ask.Limit,
 	}
 	if err := l.orderBy(designOrders); err != nil {
@@ -211,21 +222,30 @@ func (s *Store) Designs(ctx context.Context, ask record.Listing) (found record.D
 		l.conditions = append(l.conditions, "verdict = @verdict::verdict")
 		l.args["verdict"] = ask.Verdict.String()
 	}
-	p, err := fetch(ctx, s, l, scanDesign)
+	p, err := fetch(ctx, s, l)
 	return record.DesignPage{Designs: p.rows, Next: p.next, Previous: p.previous, Total: p.total, More: p.more}, err
 }
 
+var equipmentID = key[record.Equipment]{"id", "text", func(e record.Equipment) string { return string(e.ID) }}
+
 // equipmentOrders are the orders of the list of equipment.
-var equipmentOrders = map[record.Sort]order{
-	record.SortName:    {keys: []key{{"maker", "text"}, {"model", "text"}, {"id", "text"}}},
-	record.SortUpdated: {keys: []key{{"updated_at", "timestamptz"}, {"id", "text"}}, falling: true},
+var equipmentOrders = map[record.Sort]order[record.Equipment]{
+	record.SortName: {[]key[record.Equipment]{
+		{"maker", "text", func(e record.Equipment) string { return e.Maker }},
+		{"model", "text", func(e record.Equipment) string { return e.Model }},
+		equipmentID,
+	}, false},
+	record.SortUpdated: {[]key[record.Equipment]{
+		{"updated_at", "timestamptz", func(e record.Equipment) string { return instant(e.Updated.At) }},
+		equipmentID,
+	}, true},
 }
 
 // EquipmentList returns a page of the equipment that people keep.
 func (s *Store) EquipmentList(ctx context.Context, ask record.EquipmentListing) (found record.EquipmentPage, err error) {
 	defer wrap(&err, "list equipment")
-	l := list{
-		table: "equipment", columns: equipmentColumns, args: pgx.StrictNamedArgs{},
+	l := list[record.Equipment]{
+		table: "equipment", columns: equipmentColumns, scan: scanEquipment, args: pgx.StrictNamedArgs{},
 		sort: cmp.Or(ask.Sort, record.SortName), reversed: ask.Reversed, cursor: ask.Cursor, limit: ask.Limit,
 	}
 	if err := l.orderBy(equipmentOrders); err != nil {
@@ -236,11 +256,14 @@ func (s *Store) EquipmentList(ctx context.Context, ask record.EquipmentListing) 
 		l.conditions = append(l.conditions, "kind = @kind")
 		l.args["kind"] = clean(ask.Kind)
 	}
-	p, err := fetch(ctx, s, l, scanEquipment)
+	p, err := fetch(ctx, s, l)
 	return record.EquipmentPage{Equipment: p.rows, Next: p.next, Previous: p.previous, Total: p.total, More: p.more}, err
 }
 
-func (l *list) orderBy(orders map[record.Sort]order) error {
+// instant writes a time as the database takes it, to the microsecond that it keeps.
+func instant(t time.Time) string { return t.Format(time.RFC3339Nano) }
+
+func (l *list[T]) orderBy(orders map[record.Sort]order[T]) error {
 	var ok bool
 	if l.order, ok = orders[l.sort]; !ok {
 		return fmt.Errorf("%w: this list cannot be sorted by %q", record.ErrInvalid, l.sort)
@@ -248,7 +271,7 @@ func (l *list) orderBy(orders map[record.Sort]order) error {
 	return nil
 }
 
-func (l *list) filter(archived bool, search string) {
+func (l *list[T]) filter(archived bool, search string) {
 	l.conditions = append(l.conditions, "archived_at is null")
 	if archived {
 		l.conditions[0] = "archived_at is not null"

@@ -129,7 +129,10 @@ func decodeHeadroom(text string) (*quantity.Exact, error) {
 	if text == unknownHeadroom {
 		return nil, nil
 	}
-	r, ok := new(big.Rat).SetString(text)
+	if x, err := quantity.Parse(text); err == nil {
+		return &x, nil
+	}
+	r, ok := new(big.Rat).SetString(text) // more digits than people write
 	if !ok {
 		return nil, fmt.Errorf("a saved headroom of %q", text)
 	}

@@ -44,9 +44,7 @@ func TestWrite_CancelledMidway(t *testing.T) {
 			if !errors.Is(err, context.Canceled) || errors.Is(err, record.ErrUnavailable) {
 				t.Errorf("got %v, want Canceled", err)
 			}
-			if n := s.BusyConns(); n != 0 {
-				t.Errorf("%d connections are still at work", n)
-			}
+			awaitIdle(t, s)
 			if d, err := s.Design(t.Context(), first.Design); err != nil || d.Title != "House" {
 				t.Errorf("the title is %q: %v", d.Title, err)
 			}
@@ -73,8 +71,17 @@ func TestWrite_Panics(t *testing.T) {
 		defer func() { _ = recover() }()
 		_ = s.Write(t.Context(), func(ctx context.Context, tx pgx.Tx) error { panic("ours") })
 	}()
-	if n := s.BusyConns(); n != 0 {
-		t.Errorf("%d connections are still at work", n)
+	awaitIdle(t, s)
+}
+
+// awaitIdle waits until no connection of the store is at work; one that is given up
+// is closed a little later.
+func awaitIdle(t *testing.T, s *store.Store) {
+	t.Helper()
+	for end := time.Now().Add(5 * time.Second); s.BusyConns() > 0; time.Sleep(time.Millisecond) {
+		if time.Now().After(end) {
+			t.Fatalf("%d connections are still at work", s.BusyConns())
+		}
 	}
 }
 

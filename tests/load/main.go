@@ -28,6 +28,7 @@ var (
 	rounds   = flag.Int("rounds", 5, "how often each measurement is made; the median counts")
 	duration = flag.Duration("duration", 4*time.Second, "how long one measurement takes")
 	designIn = flag.String("design", "sizing/design/testdata/example-design.json", "the design that is posted")
+	only     = flag.String("only", "", "measure this alone: pages or store; both if empty")
 	bare     = flag.String("bare", "", "be the bare handler: answer with the content of this file (the program starts itself so)")
 )
 
@@ -93,9 +94,6 @@ func start(ctx context.Context, name string, args ...string) (string, error) {
 }
 
 func measure(ctx context.Context) error {
-	if _, err := exec.LookPath("wrk"); err != nil {
-		return fmt.Errorf("wrk is needed (Debian: apt-get install wrk): %w", err)
-	}
 	dir, err := os.MkdirTemp("", "rimeline-load")
 	if err != nil {
 		return err
@@ -105,7 +103,22 @@ func measure(ctx context.Context) error {
 	if err != nil {
 		return fmt.Errorf("%w (run this from the top of the tree)", err)
 	}
+	if *only != "store" {
+		if err := measurePages(ctx, dir, design); err != nil {
+			return err
+		}
+	}
+	if *only != "pages" {
+		return measureStore(ctx, dir, design)
+	}
+	return nil
+}
 
+// measurePages compares the service with a handler that only sends bytes.
+func measurePages(ctx context.Context, dir string, design []byte) error {
+	if _, err := exec.LookPath("wrk"); err != nil {
+		return fmt.Errorf("wrk is needed (Debian: apt-get install wrk): %w", err)
+	}
 	program := filepath.Join(dir, "rimeline")
 	if out, err := exec.CommandContext(ctx, "go", "build", "-o", program, "./cmd/rimeline").CombinedOutput(); err != nil {
 		return fmt.Errorf("go build: %w\n%s", err, out)
