@@ -273,18 +273,24 @@ func (b *tab) enter() {
 	}
 }
 
-// wait waits until an expression in the page is true.
+// wait waits until an expression in the page is true. An error is no end of it: the
+// page may be making way for the next one.
 func (b *tab) wait(expression string) {
 	b.t.Helper()
 	ctx, cancel := context.WithTimeout(b.ctx, patience)
 	defer cancel()
+	last := "false"
 	for {
 		ok, err := chromedp.Run(ctx, chromedp.Evaluate[bool](expression))
-		if err != nil {
-			b.t.Fatalf("waiting for %s: %v", expression, err)
-		}
-		if ok {
+		switch {
+		case ctx.Err() != nil:
+			b.t.Fatalf("waited %s for %s; it was %s", patience, expression, last)
+		case err != nil:
+			last = err.Error()
+		case ok:
 			return
+		default:
+			last = "false"
 		}
 		time.Sleep(20 * time.Millisecond)
 	}
