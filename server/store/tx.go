@@ -12,12 +12,17 @@ import (
 	"rimeline/server/record"
 )
 
-// attempts is how often a transaction is tried that the database refused for the
-// sake of another one (deadlock), or whose connection turned out to be dead.
-const attempts = 3
+const (
+	// attempts is how often something is tried whose connection turned out to be dead,
+	// or which the database refused for the sake of another transaction (deadlock).
+	attempts = 3
 
-// read runs do on a connection, and once more on another one if the first turns out
-// to be dead: after a restart of the database the pool is full of such.
+	// pause is what lets that other transaction have what it waited for.
+	pause = 20 * time.Millisecond
+)
+
+// read runs do on a connection, and again on another one if the first turns out to be
+// dead: after a restart of the database the pool is full of such.
 func (s *Store) read(ctx context.Context, do func(ctx context.Context, conn *pgx.Conn) error) error {
 	return s.run(ctx, func(ctx context.Context, conn *pgx.Conn) (bool, error) {
 		err := do(ctx, conn)
@@ -85,6 +90,9 @@ func (s *Store) run(caller context.Context, do func(context.Context, *pgx.Conn) 
 		again, err := s.runOnce(ctx, do)
 		if err == nil || !again || attempt == attempts || ctx.Err() != nil {
 			return kind(caller, err)
+		}
+		if refusedForAnother(err) {
+			time.Sleep(pause)
 		}
 	}
 }

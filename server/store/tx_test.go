@@ -121,8 +121,8 @@ func TestWrite_Deadlock(t *testing.T) {
 			t.Error(err)
 		}
 	}
-	if n := <-tries + <-tries; n != 3 {
-		t.Errorf("%d tries, want 3: one transaction had to be done again", n)
+	if n := <-tries + <-tries; n < 3 {
+		t.Errorf("%d tries: neither transaction had to be done again, so this tested nothing", n)
 	}
 	sites, err := s.QueryTexts(t.Context(), `select right(site, 2) from design order by 1`)
 	if err != nil || len(sites) != 2 || sites[0] != sites[1] {
