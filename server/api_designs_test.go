@@ -456,6 +456,7 @@ func TestReady(t *testing.T) {
 	}
 	t.Cleanup(empty.Close)
 	old, _ := testServer(Config{Saving: func() (Saving, error) { return empty, nil }})
+	unfit, _ := testServer(Config{Saving: func() (Saving, error) { return nil, fmt.Errorf("%w: a file was edited", ErrUnfit) }})
 	for _, c := range []struct {
 		name   string
 		s      *Server
@@ -465,7 +466,8 @@ func TestReady(t *testing.T) {
 		{"ready", ready, 200, "ready\n"},
 		{"nothing is saved", nothing, 503, "without a database"},
 		{"starting", starting, 503, "still starting"},
-		{"no migration", old, 503, "not as this version"},
+		{"no migration", old, 503, "cannot be used as it is"},
+		{"a migration that cannot be applied", unfit, 503, "cannot be used as it is"},
 		{"away", awayServer(t), 503, "cannot be reached"},
 	} {
 		w := ask(t, c.s, "GET", "/readyz", "")

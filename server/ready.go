@@ -24,12 +24,13 @@ func (s *Server) ready(w http.ResponseWriter, r *http.Request) error {
 		return nil
 	}
 	s.log.WarnContext(r.Context(), "not ready", "request_id", visitOf(r).requestID, "error", err)
-	reason := "the database is not as this version of the program needs it"
+	reason := "the database cannot be used as it is"
 	switch {
 	case errors.Is(err, ErrStarting):
 		reason = "the database is still starting"
 	case errors.Is(err, ErrNothingSaved):
-		reason = "nothing is saved, because the service was started without a database"
+		reason = "nothing is saved, as the service was started without a database"
+	case errors.Is(err, ErrUnfit):
 	case errors.Is(err, record.ErrUnavailable):
 		reason = "the database cannot be reached"
 	}

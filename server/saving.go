@@ -56,10 +56,11 @@ type keptAnswers interface {
 		do func(context.Context) (record.Answer, error)) (answer record.Answer, repeated bool, err error)
 }
 
-// Why there is nowhere to save. Both are of the kind [record.ErrUnavailable].
+// Why there is nowhere to save. All are of the kind [record.ErrUnavailable].
 var (
 	ErrStarting     = fmt.Errorf("%w: it is still starting", record.ErrUnavailable)
 	ErrNothingSaved = fmt.Errorf("%w: the service was started without one", record.ErrUnavailable)
+	ErrUnfit        = fmt.Errorf("%w: it cannot be used as it is", record.ErrUnavailable)
 )
 
 // saving returns what is saved, or an error of the kind [record.ErrUnavailable].
@@ -143,6 +144,11 @@ func unavailable(err error, forProgram bool) *statusError {
 		f.heading = "Nothing is saved here"
 		f.message = "This service was started without a database. Sizing works; keep a design as a file. " +
 			"When the service starts it says how to have designs saved."
+	case errors.Is(err, ErrUnfit):
+		after = "60"
+		f.heading = "What is saved cannot be reached"
+		f.message = "The database cannot be used as it is; the log of the service says why. " +
+			"Sizing goes on. Nothing was saved; keep the design as a file."
 	default:
 		f.heading = "What is saved cannot be reached"
 		f.message = "The database does not answer at the moment. Sizing goes on. Nothing was saved; " +

@@ -56,6 +56,7 @@ func TestSavingFailures(t *testing.T) {
 		{unknown, 503, 503, "5", "in the instant of saving"},
 		{ErrStarting, 503, 503, "1", "Sizing works already"},
 		{ErrNothingSaved, 503, 503, "60", "keep a design as a file"},
+		{ErrUnfit, 503, 503, "60", "the log of the service says why"},
 		{errors.New("relation does not exist"), 500, 500, "", "could not be worked on"},
 	} {
 		t.Run(c.err.Error(), func(t *testing.T) {

@@ -29,8 +29,11 @@ Flags of the service:
                           may be given several times, or several names with commas
   --open-to-anyone        allow an address that other machines can reach: whoever
                           reaches it can use the service, there are no accounts
+  --data DIR              where the service keeps a PostgreSQL of its own
 
-RIMELINE_LISTEN and RIMELINE_HOST_NAMES in the environment stand for the first two.
+RIMELINE_LISTEN, RIMELINE_HOST_NAMES and RIMELINE_DATA in the environment stand for
+the flags. DATABASE_URL names a PostgreSQL database to save designs in. Without it the
+service keeps one for itself, if the machine has PostgreSQL; sizing works without any.
 
 size prints one result a line, in the order of the designs. A design that is refused
 prints the reasons in its place, and on standard error too. Exit status: 0 all within

@@ -224,10 +224,21 @@ func service(t *testing.T, env map[string]string, args ...string) (printed strin
 		t.Fatalf("the service did not start: %s", &stderr)
 	}
 	t.Cleanup(cancel)
+	go io.Copy(io.Discard, out)
 	return string(buf[:n]), func() outcome {
 		cancel()
 		return outcome{status: <-ended, stderr: stderr.String()}
 	}
+}
+
+// without is an environment whose database cannot be reached.
+func without(t *testing.T, more ...string) map[string]string {
+	t.Helper()
+	env := map[string]string{"DATABASE_URL": "host=" + t.TempDir()}
+	for i := 0; i < len(more); i += 2 {
+		env[more[i]] = more[i+1]
+	}
+	return env
 }
 
 func TestServe(t *testing.T) {
@@ -238,16 +249,16 @@ func TestServe(t *testing.T) {
 		host string // in the request
 		want int
 	}{
-		{"loopback", nil, []string{"--listen", "127.0.0.1:0"}, "", 200},
-		{"loopback by name", nil, []string{"--listen", "localhost:0"}, "", 200},
-		{"from the environment", map[string]string{"RIMELINE_LISTEN": "127.0.0.1:0"}, nil, "", 200},
-		{"a flag overrules the environment", map[string]string{"RIMELINE_LISTEN": "0.0.0.0:0"}, []string{"--listen", "127.0.0.1:0"}, "", 200},
-		{"a foreign name", nil, []string{"--listen", "127.0.0.1:0"}, "attacker.example", 421},
-		{"an own name", nil, []string{"--listen", "127.0.0.1:0", "--host-name", "a.example,b.example", "--host-name", "c.example"}, "c.example", 200},
-		{"an own name of a list", nil, []string{"--listen", "127.0.0.1:0", "--host-name", "a.example, b.example"}, "b.example", 200},
-		{"an own name from the environment", map[string]string{"RIMELINE_HOST_NAMES": "d.example"}, []string{"--listen", "127.0.0.1:0"}, "d.example:80", 200},
-		{"open, by an address of the network", nil, []string{"--listen", "0.0.0.0:0", "--open-to-anyone"}, "192.0.2.7", 200},
-		{"open, a foreign name", nil, []string{"--listen", "0.0.0.0:0", "--open-to-anyone"}, "attacker.example", 421},
+		{"loopback", without(t), []string{"--listen", "127.0.0.1:0"}, "", 200},
+		{"loopback by name", without(t), []string{"--listen", "localhost:0"}, "", 200},
+		{"from the environment", without(t, "RIMELINE_LISTEN", "127.0.0.1:0"), nil, "", 200},
+		{"a flag overrules the environment", without(t, "RIMELINE_LISTEN", "0.0.0.0:0"), []string{"--listen", "127.0.0.1:0"}, "", 200},
+		{"a foreign name", without(t), []string{"--listen", "127.0.0.1:0"}, "attacker.example", 421},
+		{"an own name", without(t), []string{"--listen", "127.0.0.1:0", "--host-name", "a.example,b.example", "--host-name", "c.example"}, "c.example", 200},
+		{"an own name of a list", without(t), []string{"--listen", "127.0.0.1:0", "--host-name", "a.example, b.example"}, "b.example", 200},
+		{"an own name from the environment", without(t, "RIMELINE_HOST_NAMES", "d.example"), []string{"--listen", "127.0.0.1:0"}, "d.example:80", 200},
+		{"open, by an address of the network", without(t), []string{"--listen", "0.0.0.0:0", "--open-to-anyone"}, "192.0.2.7", 200},
+		{"open, a foreign name", without(t), []string{"--listen", "0.0.0.0:0", "--open-to-anyone"}, "attacker.example", 421},
 	} {
 		t.Run(c.name, func(t *testing.T) {
 			printed, stop := service(t, c.env, c.args...)

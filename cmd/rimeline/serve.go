@@ -15,6 +15,7 @@ import (
 	"syscall"
 
 	"rimeline/server"
+	"rimeline/server/store"
 )
 
 const defaultListen = "127.0.0.1:8380"
@@ -24,16 +25,21 @@ type serveOptions struct {
 	listen       string
 	hostNames    []string
 	openToAnyone bool
+	databaseURL  string
+	dataDir      string
 }
 
 func parseServeOptions(args []string, getenv func(string) string) (serveOptions, error) {
 	o := serveOptions{
-		listen:    cmp.Or(getenv("RIMELINE_LISTEN"), defaultListen),
-		hostNames: names(getenv("RIMELINE_HOST_NAMES")),
+		listen:      cmp.Or(getenv("RIMELINE_LISTEN"), defaultListen),
+		hostNames:   names(getenv("RIMELINE_HOST_NAMES")),
+		databaseURL: getenv("DATABASE_URL"),
+		dataDir:     getenv("RIMELINE_DATA"),
 	}
 	flags := flag.NewFlagSet("rimeline", flag.ContinueOnError)
 	flags.SetOutput(io.Discard) // the caller prints what is wrong, once
 	flags.StringVar(&o.listen, "listen", o.listen, "")
+	flags.StringVar(&o.dataDir, "data", o.dataDir, "")
 	flags.BoolVar(&o.openToAnyone, "open-to-anyone", false, "")
 	flags.Func("host-name", "", func(list string) error {
 		added := names(list)
@@ -107,6 +113,15 @@ func serve(ctx context.Context, args []string, getenv func(string) string, stdou
 			"If that is wanted, add --open-to-anyone; if not, leave --listen away to serve this machine only.\n", o.listen)
 		return exitRefused
 	}
+	out, errs := &together{to: stdout}, &together{to: stderr}
+	log := slog.New(slog.NewTextHandler(errs, nil))
+	k := &keeper{dataDir: o.dataDir, getenv: getenv, log: log, stdout: out, stderr: errs}
+	if o.databaseURL != "" {
+		if k.given, err = store.Open(ctx, o.databaseURL, log); err != nil {
+			fmt.Fprintf(stderr, "rimeline: not started: DATABASE_URL: %v\n", err)
+			return exitRefused
+		}
+	}
 	listener, err := net.Listen("tcp", o.listen)
 	if err != nil {
 		fmt.Fprintln(stderr, "rimeline:", err)
@@ -121,15 +136,18 @@ func serve(ctx context.Context, args []string, getenv func(string) string, stdou
 		// and costs some 20 MB.
 		debug.SetGCPercent(400)
 	}
+	fmt.Fprintln(out, whereItIs(listener.Addr()))
+	k.start()
+	defer k.stop()
 	s := server.New(server.Config{
-		Log:        slog.New(slog.NewTextHandler(stderr, nil)),
+		Log:        log,
 		HostNames:  o.hostNames,
 		AnyAddress: !loopback,
 		Version:    version(),
+		Saving:     k.Saving,
 	})
-	fmt.Fprintln(stdout, whereItIs(listener.Addr()))
 	if err := s.Serve(ctx, listener); err != nil {
-		fmt.Fprintln(stderr, "rimeline: stopped:", err)
+		fmt.Fprintln(errs, "rimeline: stopped:", err)
 		return exitRefused
 	}
 	return exitFits
