@@ -205,12 +205,44 @@ func TestAway_InTheInstantOfACommit(t *testing.T) {
 	}
 }
 
+// TestAway_Silent: a database that has stopped to answer, as behind a broken network,
+// is given up in time, and used again when it answers.
+func TestAway_Silent(t *testing.T) {
+	t.Parallel()
+	if testing.Short() {
+		t.Skip("it waits for the timeouts, ten seconds")
+	}
+	cut := newCutter(t, testdb.New(t, migrated))
+	s := open(t, cut.dsn)
+	first := mustSave(t, s, store.Save{Frozen: sample(t, "House")})
+	cut.silent.Store(true)
+	for _, c := range []struct {
+		name   string
+		within time.Duration
+		call   func() error
+	}{
+		{"Ready", 3 * time.Second, func() error { return s.Ready(t.Context()) }},
+		{"SaveRevision", 7 * time.Second, func() error {
+			_, err := s.SaveRevision(t.Context(), ann, store.Save{Design: first.Design, Base: 1, Frozen: sample(t, "House")})
+			return err
+		}},
+	} {
+		began := time.Now()
+		if err := c.call(); !errors.Is(err, record.ErrUnavailable) || time.Since(began) > c.within {
+			t.Errorf("%s, after %v: %v, want ErrUnavailable", c.name, time.Since(began), err)
+		}
+	}
+	cut.silent.Store(false)
+	mustSave(t, s, store.Save{Design: first.Design, Base: 1, Frozen: sample(t, "House")})
+}
+
 // cutter stands between a store and the database, and cuts a connection at the next
-// commit when it is told to.
+// commit, or lets nothing through, when it is told to.
 type cutter struct {
 	dsn    string
 	server string               // its socket
 	next   atomic.Pointer[bool] // cut: false before the database gets the commit, true after it answered
+	silent atomic.Bool
 }
 
 func newCutter(t *testing.T, dsn string) *cutter {
@@ -255,6 +287,9 @@ func (c *cutter) carry(client net.Conn) {
 			if err != nil || deaf.Load() {
 				client.Close()
 				return
+			}
+			if c.silent.Load() {
+				continue
 			}
 			if _, err := client.Write(answer[:n]); err != nil {
 				return

@@ -35,9 +35,12 @@ func (s *Store) Migrate(ctx context.Context) (err error) {
 }
 
 // Ready reports whether the database can be reached and is as this version of the
-// program needs it.
+// program needs it. It says so within two seconds: who asks wants to send requests
+// elsewhere.
 func (s *Store) Ready(ctx context.Context) (err error) {
 	defer wrap(&err, "ready")
+	ctx, cancel := context.WithTimeout(ctx, connectTimeout)
+	defer cancel()
 	steps, err := readMigrations(migrations.FS)
 	if err != nil {
 		return err
