@@ -22,8 +22,8 @@ const (
 	quitLimit    = 6 * time.Second  // an immediate stop; PostgreSQL kills its own processes after 5 s
 )
 
-// The pause before a dead server is started again is doubled each time up to a limit,
-// and forgotten once a server has lived for a while.
+// A server that died is started again at once, and after that with pauses that are
+// doubled up to a limit and forgotten once a server has lived for a while.
 const (
 	firstPause = 100 * time.Millisecond
 	longPause  = 10 * time.Second
@@ -43,7 +43,7 @@ type Server struct {
 	stop     context.CancelFunc
 	hurry    chan struct{} // closed when Stop no longer waits for an orderly end
 	hurryOne sync.Once
-	ended    chan struct{} // closed when nothing runs any more and the lock is released
+	ended    chan struct{} // closed when nothing runs any more
 
 	mu   sync.Mutex
 	down error // nil while the server answers
@@ -116,44 +116,46 @@ func (s *Server) firstLaunch(ctx context.Context) (*postmaster, error) {
 // supervise watches the postmaster and starts another one when it dies, until Stop.
 func (s *Server) supervise(pm *postmaster) {
 	defer close(s.ended)
-	pause := firstPause
-	for {
-		stable := time.NewTimer(stableLife)
+	defer s.set(0, errStopped)
+	var pause time.Duration
+	for pm != nil {
+		stable := time.After(stableLife)
 		select {
 		case <-s.stopping.Done():
-			stable.Stop()
 			pm.end(s.hurry, 0)
-			s.set(0, errStopped)
 			return
 		case <-pm.ended:
 		}
-		if !stable.Stop() {
-			pause = firstPause
+		select {
+		case <-stable:
+			pause = 0
+		default:
 		}
-		down := pm.failure()
-		if s.stopping.Err() == nil {
-			s.log.Error("private PostgreSQL died and is started again", "reason", down)
-		}
-		for pm = nil; pm == nil; {
-			s.change(0, down)
-			if s.stopping.Err() != nil {
-				s.set(0, errStopped)
-				return
-			}
-			pm, down = s.relaunch()
-			if pm != nil {
-				break
-			}
-			s.log.Error("private PostgreSQL does not start", "reason", down, "again_in", pause)
-			select {
-			case <-s.stopping.Done():
-			case <-time.After(pause):
-			}
-			pause = min(2*pause, longPause)
-		}
-		s.change(pm.pid(), nil)
-		s.log.Info("private PostgreSQL is ready again", "process", pm.pid())
+		pm, pause = s.restart(pm.failure(), pause)
 	}
+}
+
+// restart starts the server again, as often as it takes, with a pause before each that
+// becomes longer. It returns no postmaster when Stop has begun, and the next pause.
+func (s *Server) restart(down error, pause time.Duration) (*postmaster, time.Duration) {
+	for s.stopping.Err() == nil {
+		s.log.Error("private PostgreSQL is down", "reason", down, "started_again_in", pause)
+		s.change(0, down)
+		select {
+		case <-s.stopping.Done():
+			return nil, pause
+		case <-time.After(pause):
+		}
+		pause = min(max(2*pause, firstPause), longPause)
+		pm, err := s.relaunch()
+		if err == nil {
+			s.log.Info("private PostgreSQL is ready again", "process", pm.pid())
+			s.change(pm.pid(), nil)
+			return pm, pause
+		}
+		down = err
+	}
+	return nil, pause
 }
 
 // relaunch starts the server on data that are there, and waits until it answers.
