@@ -28,7 +28,7 @@ var exampleDesign []byte
 
 // showDesign shows the empty form.
 func (s *Server) showDesign(w http.ResponseWriter, r *http.Request) error {
-	p := newDesignPage(newBase("Size strings", "/design"), judge(form.New()), marking{})
+	p := s.designPage(r, newBase("Size strings", "/design"), judge(form.New()), marking{}, newOrigin())
 	p.Fresh = true
 	return s.render(w, r, http.StatusOK, views.Design(p))
 }
@@ -39,7 +39,7 @@ func (s *Server) showExample(w http.ResponseWriter, r *http.Request) error {
 	if err != nil {
 		return err
 	}
-	return s.render(w, r, http.StatusOK, views.Design(newDesignPage(newBase("Example", "/example"), judge(f), marking{})))
+	return s.render(w, r, http.StatusOK, views.Design(s.designPage(r, newBase("Example", "/example"), judge(f), marking{}, newOrigin())))
 }
 
 // sizeDesign answers the whole form: with its answer, with its faults, or changed by
@@ -58,7 +58,7 @@ func (s *Server) sizeDesign(w http.ResponseWriter, r *http.Request) error {
 		return err
 	}
 	base := newBase(titled("Design", f), "/design")
-	return s.render(w, r, http.StatusOK, views.Design(newDesignPage(base, judge(f), marking{focus: focus})))
+	return s.render(w, r, http.StatusOK, views.Design(s.designPage(r, base, judge(f), marking{focus: focus}, originOf(r.PostForm))))
 }
 
 // showJudged shows the form with its answer, or with every fault marked.
@@ -67,7 +67,7 @@ func (s *Server) showJudged(w http.ResponseWriter, r *http.Request, j judged) er
 	if j.design == nil {
 		base.Title, status = "Please correct: "+base.Title, http.StatusUnprocessableEntity
 	}
-	return s.render(w, r, status, views.Design(newDesignPage(base, j, marking{faults: true})))
+	return s.render(w, r, status, views.Design(s.designPage(r, base, j, marking{faults: true}, originOf(r.PostForm))))
 }
 
 // change does to the form what a button asks for, such as "add /modules", and
@@ -129,11 +129,8 @@ func (s *Server) showCarried(w http.ResponseWriter, r *http.Request, title strin
 	if j.design == nil {
 		return s.showJudged(w, r, j)
 	}
-	page := views.CarriedPage{Base: newBase(titled(title, f), r.URL.Path), Here: r.URL.Path}
+	page := views.CarriedPage{Base: newBase(titled(title, f), r.URL.Path), Here: r.URL.Path, Carried: carried(f, originOf(r.PostForm))}
 	page.Base.Styles = append(page.Base.Styles, static.URL("sheet.css"))
-	for _, name := range f.Names("/") {
-		page.Carried = append(page.Carried, views.HiddenField{Name: name, Value: f.Text(name)})
-	}
 	return s.render(w, r, http.StatusOK, views.Carried(page, body(j)))
 }
 
@@ -187,17 +184,17 @@ func (s *Server) openFile(w http.ResponseWriter, r *http.Request) error {
 	case errors.Is(err, form.ErrTooMany):
 		return tooManyEntries
 	case err != nil || read.Malformed:
-		p := newDesignPage(newBase("Not opened: "+name, "/design"), judge(form.New()), marking{})
+		p := s.designPage(r, newBase("Not opened: "+name, "/design"), judge(form.New()), marking{}, newOrigin())
 		p.Faults = unopened(name, content, read.Faults)
 		return s.render(w, r, http.StatusUnprocessableEntity, views.Design(p))
 	case read.Design == nil:
 		// The reader's faults of the file itself: a field that is not known, or one
 		// that stands there twice, is in the file and not in the form.
-		p := newDesignPage(newBase("Please correct: "+titled("Design", f), "/design"), judged{form: f, faults: read.Faults}, marking{faults: true})
+		p := s.designPage(r, newBase("Please correct: "+titled("Design", f), "/design"), judged{form: f, faults: read.Faults}, marking{faults: true}, newOrigin())
 		p.Faults.Lead = "This is what “" + name + "” says as far as the form has a field for it. Nothing else of the file is carried over."
 		return s.render(w, r, http.StatusUnprocessableEntity, views.Design(p))
 	}
-	return s.render(w, r, http.StatusOK, views.Design(newDesignPage(newBase(titled("Design", f), "/design"), judge(f), marking{})))
+	return s.render(w, r, http.StatusOK, views.Design(s.designPage(r, newBase(titled("Design", f), "/design"), judge(f), marking{}, newOrigin())))
 }
 
 // uploadedFile returns the design file of a request; its name is "" where none was chosen.
@@ -258,7 +255,6 @@ func newBase(title, here string) views.Base {
 		Styles:  []string{static.URL("rimeline.css"), static.URL("answer.css")},
 		Scripts: []string{static.URL("htmx.js"), static.URL("rimeline.js")},
 		Icon:    static.URL("icon.svg"),
-		Wide:    here == "/design" || here == "/example",
 	}
 }
 

@@ -12,6 +12,7 @@ import (
 	"rimeline/server/form"
 	"rimeline/sizing"
 	"rimeline/sizing/design"
+	"rimeline/static"
 	"rimeline/views"
 )
 
@@ -41,6 +42,9 @@ type marking struct {
 // newDesignPage makes the page of a form with the answer, or with what it waits for.
 func newDesignPage(base views.Base, j judged, m marking) views.DesignPage {
 	b := newPageBuilder(j, m)
+	base.Wide = true
+	base.Styles = append(base.Styles, static.URL("saved.css"))
+	base.Scripts = append(base.Scripts, static.URL("kept.js"))
 	p := views.DesignPage{
 		Base:     base,
 		Title:    b.field("", titleInquiry),
@@ -548,13 +552,21 @@ func prefixedBy(s, with string) string {
 
 // inOrder returns the faults in the order of the page.
 func (b *pageBuilder) inOrder(faults design.Faults) design.Faults {
-	order := []string{"/title", "/site", "/rulebook", "/voltage_method", "/short_circuit_basis", "/modules", "/inverters", "/planes", "/strings", "/allowances", "/other_limits", "/job"}
-	rank := func(f design.Fault) int {
-		return slices.IndexFunc(order, func(top string) bool { return f.Pointer == top || strings.HasPrefix(f.Pointer, top+"/") })
-	}
 	sorted := slices.Clone(faults)
-	slices.SortStableFunc(sorted, func(a, c design.Fault) int { return rank(a) - rank(c) })
+	slices.SortStableFunc(sorted, func(a, c design.Fault) int { return sectionOf(a.Pointer) - sectionOf(c.Pointer) })
 	return sorted
+}
+
+// sectionOf tells where on the page a pointer lies: a greater number is further down,
+// and what has no place comes first.
+func sectionOf(pointer string) int {
+	return slices.IndexFunc(formOrder, func(top string) bool { return pointer == top || strings.HasPrefix(pointer, top+"/") })
+}
+
+// formOrder is the parts of the form in the order of the page.
+var formOrder = []string{
+	"/title", "/site", "/rulebook", "/voltage_method", "/short_circuit_basis", "/modules", "/inverters", "/planes",
+	"/strings", "/allowances", "/other_limits", "/job", "/sources", "/answers",
 }
 
 // href leads to the field of a pointer, or to the nearest part of the page.

@@ -32,6 +32,19 @@ func (s *Server) routes() chi.Router {
 		r.Post("/design/file", s.handle(s.saveFile))       // the design as a file to keep
 		r.Post("/design/open", s.handle(s.openFile))       // such a file, back into the form
 
+		r.Get("/designs", s.handle(s.withSaving(s.showDesigns)))
+		r.Post("/designs", s.handle(s.saveDesign)) // the form, as a design or its next revision
+		r.Get("/designs/{id}", s.handle(s.withSaving(s.showSaved)))
+		r.Post("/designs/{id}/archive", s.handle(s.withSaving(s.archiveDesign)))
+		r.Post("/designs/{id}/restore", s.handle(s.withSaving(s.restoreDesign)))
+		r.Post("/designs/{id}/duplicate", s.handle(s.withSaving(s.duplicateDesign)))
+		r.Get("/designs/{id}/revisions", s.handle(s.withSaving(s.showRevisions)))
+		r.Get("/designs/{id}/revisions/{n}", s.handle(s.withSaving(s.showRevision)))
+		r.Get("/designs/{id}/compare", s.handle(s.withSaving(s.compareRevisions)))
+		r.Post("/drafts", s.handle(s.keepDraft)) // the form as it stands, for the script and for a button
+		r.Get("/drafts/{id}", s.handle(s.withSaving(s.showDraft)))
+		r.Post("/drafts/{id}/discard", s.handle(s.withSaving(s.discardDraft)))
+
 		r.Get("/api/openapi.json", s.handle(s.apiDescription))
 		r.Post("/api/v1/size", s.handle(s.apiSize))
 

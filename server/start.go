@@ -1,16 +1,50 @@
 package server
 
 import (
+	"context"
+	"errors"
 	"net/http"
+	"time"
 
+	"rimeline/server/record"
 	"rimeline/views"
 )
 
-// showStart shows the first page.
+// showStart shows the first page. What is saved belongs to it, but it is of use
+// without: a database that does not answer at once is not waited for.
 func (s *Server) showStart(w http.ResponseWriter, r *http.Request) error {
-	base := newBase("Size strings of rooftop PV arrays", "/")
-	base.Styles, base.Scripts = base.Styles[:1], nil // nothing on it needs more
-	return s.render(w, r, http.StatusOK, views.Start(views.StartPage{Base: base, Cautions: standingCautions}))
+	base := listBase("Size strings of rooftop PV arrays", "/")
+	p := views.StartPage{Base: base, Cautions: standingCautions}
+	ctx, cancel := context.WithTimeout(r.Context(), patience)
+	defer cancel()
+	recent, drafts, err := s.savedLast(ctx)
+	switch {
+	case err == nil:
+		p.Saving = "No account is needed. Designs are saved at this service, and whoever reaches it can open them."
+		p.Recent, p.Drafts = designRows(recent, time.Now()), draftLinks(drafts, time.Now())
+	case errors.Is(err, ErrNothingSaved):
+		p.Saving = "No account is needed, and nothing is kept on the server, which was started without a database: save a design as a file to keep it."
+	case errors.Is(err, ErrStarting):
+		p.Saving = "No account is needed. What is saved here can be reached in a moment, when the database has started; sizing works already."
+	default:
+		s.log.WarnContext(r.Context(), "the first page goes without what is saved", "request_id", visitOf(r).requestID, "error", err)
+		p.Saving = "No account is needed. What is saved here cannot be reached at the moment, because the database does not answer; sizing works, and a design can be kept as a file."
+	}
+	return s.render(w, r, http.StatusOK, views.Start(p))
+}
+
+// savedLast returns the designs and the drafts that were saved last.
+func (s *Server) savedLast(ctx context.Context) ([]record.Design, []record.Draft, error) {
+	saved, err := s.saving()
+	if err != nil {
+		return nil, nil, err
+	}
+	recent, err := saved.Designs(ctx, record.Listing{Limit: recentDesigns})
+	if err != nil {
+		return nil, nil, err
+	}
+	drafts, err := saved.DraftsOf(ctx, "", recentDrafts)
+	return recent.Designs, drafts, err
 }
 
 // standingCautions are what anyone who wires an array must know, whatever a

@@ -1,108 +1,32 @@
 // Comfort for the pages of Rimeline; every page works without it. htmx renews the
-// answer while one types; this file keeps what was typed in this browser, shows
-// temperatures in the other unit, says a change of the verdict once, and never lets
-// an old answer pass for a new one.
+// answer while one types; this file tells times of day as the reader's clock does,
+// shows temperatures in the other unit, says a change of the verdict once, and never
+// lets an old answer pass for a new one. What is typed is kept by kept.js.
 (() => {
 	"use strict";
 	const $ = (id) => document.getElementById(id);
-	const design = () => $("design");
 
-	// ---- What was typed, kept in this browser ----
+	// ---- Times of day, which the server gives in UTC ----
 
-	const store = "rimeline.drafts"; // [{id, at, title, fields: {name: value}}], latest first
-	const keep = 5;
-	const tab = "rimeline.tab"; // in sessionStorage: the draft that this tab writes
-	const goesOn = "rimeline.goes-on"; // there too: the next page is about the same design
+	const two = (n) => String(n).padStart(2, "0");
+	const local = (at) => {
+		const t = new Date(at), clock = `${two(t.getHours())}:${two(t.getMinutes())}`;
+		if (t.toDateString() === new Date().toDateString()) return clock;
+		return `${t.getFullYear()}-${two(t.getMonth() + 1)}-${two(t.getDate())} ${clock}`;
+	};
+	const times = () => {
+		document.querySelectorAll("time[data-clock]").forEach((t) => { t.textContent = local(t.dateTime); });
+		document.querySelectorAll("time[data-clock-title]").forEach((t) => { t.title = local(t.dateTime); });
+	};
+	document.addEventListener("rimeline:times", times);
+	times();
 
-	const drafts = () => {
-		try { return JSON.parse(localStorage.getItem(store)) || []; } catch { return []; }
-	};
-	const save = (all) => {
-		for (let n = Math.min(all.length, keep); n >= 0; n--) {
-			try { return localStorage.setItem(store, JSON.stringify(all.slice(0, n))); } catch { /* no room: fewer */ }
-		}
-	};
-
-	let changed = false, soon;
-	const write = () => {
-		const form = design();
-		if (!form || !changed) return;
-		changed = false;
-		let id = sessionStorage.getItem(tab);
-		if (!id) sessionStorage.setItem(tab, id = String(Date.now()));
-		const fields = Object.fromEntries([...new FormData(form)].filter(([, value]) => typeof value === "string"));
-		const title = (fields["/title"] || "").trim();
-		save([{ id, at: Date.now(), title, fields }, ...drafts().filter((d) => d.id !== id)]);
-	};
-	const touched = () => {
-		changed = true;
-		clearTimeout(soon);
-		soon = setTimeout(write, 300);
-	};
-	addEventListener("visibilitychange", () => document.visibilityState === "hidden" && write());
-	addEventListener("pagehide", write);
-
-	// The page that a form of this design leads to goes on with the same draft.
-	document.addEventListener("submit", (e) => {
-		if (!["design", "carried"].includes(e.target.id) || e.submitter?.formAction.endsWith("/design/file")) return;
-		write();
-		sessionStorage.setItem(goesOn, "yes");
-	});
-
-	const restore = (draft) => {
-		sessionStorage.setItem(tab, draft.id);
-		const values = { ...draft.fields, do: "show" };
-		return htmx.ajax("POST", "/design", { values, target: "#workspace", select: "#workspace", swap: "outerHTML" });
-	};
-
-	const time = (at) => {
-		const then = new Date(at), clock = then.toLocaleTimeString([], { hour: "2-digit", minute: "2-digit" });
-		return then.toDateString() === new Date().toDateString() ? `at ${clock}` : `on ${then.toLocaleDateString()} at ${clock}`;
-	};
-	const named = (d) => (d.title ? `“${d.title}”` : "a design without a title");
-	const button = (words, press) => {
-		const b = document.createElement("button");
-		b.type = "button";
-		b.className = "do";
-		b.textContent = words;
-		b.addEventListener("click", press);
-		return b;
-	};
-	const offer = (...rows) => {
-		const box = $("offer");
-		if (!box) return;
-		box.replaceChildren();
-		box.hidden = rows.length === 0;
-		for (const row of rows) {
-			const p = document.createElement("p");
-			p.append(...row);
-			box.append(p);
-		}
-	};
-
-	// A reload brings back what this tab had; a fresh form offers what was typed before.
-	const begin = () => {
-		const form = design();
-		if (!form) return;
-		const fresh = form.hasAttribute("data-fresh");
-		const again = ["reload", "back_forward"].includes(performance.getEntriesByType("navigation")[0]?.type);
-		const continued = sessionStorage.getItem(goesOn) && !fresh;
-		sessionStorage.removeItem(goesOn);
-		const own = drafts().find((d) => d.id === sessionStorage.getItem(tab));
-		if (own && again) {
-			restore(own).then(() => offer([`Restored: what you typed here ${time(own.at)}. `, button("Start an empty design", () => {
-				sessionStorage.removeItem(tab);
-				location.assign("/design");
-			})]));
-			return;
-		}
-		if (continued) return;
-		sessionStorage.removeItem(tab);
-		const past = drafts().slice(0, 3);
-		if (!fresh || !past.length) return;
-		offer(...past.map((d) => [`You typed ${named(d)} here ${time(d.at)}. `, button("Restore it", () => restore(d).then(() => offer()))]),
-			[button("Forget these", () => { localStorage.removeItem(store); offer(); })]);
-	};
+	// What a page says of what was just done is not said again after a reload.
+	if (document.querySelector(".said") && location.search) {
+		const query = new URLSearchParams(location.search);
+		["saved", "kept", "done", "of"].forEach((name) => query.delete(name));
+		history.replaceState(history.state, "", location.pathname + (query.size ? "?" + query : ""));
+	}
 
 	// ---- Temperatures in the other unit ----
 
@@ -210,7 +134,6 @@
 		if (!ofDesign(e)) return;
 		twins();
 		renewed();
-		if (e.detail.ctx.request.action === "/design") touched();
 	});
 	document.addEventListener("htmx:error", (e) => {
 		if (ofDesign(e)) isStale("The service does not answer. What stands below is from before your last change; what you typed is kept in this browser.");
@@ -219,7 +142,6 @@
 		if (!e.target.closest("#design")) return;
 		clearTimeout(late);
 		late = setTimeout(isStale, 600, "The answer is being renewed: what stands below is from before your last change.");
-		touched();
 		twins();
 		planeNames();
 	});
@@ -247,6 +169,4 @@
 			at.scrollIntoView({ block: "center" });
 		}
 	});
-
-	begin();
 })();

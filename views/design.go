@@ -4,6 +4,7 @@ package views
 type DesignPage struct {
 	Base     Base
 	Fresh    bool // nothing has been typed yet: the script may offer what was typed before
+	Keeping  Keeping
 	Faults   *Faults
 	Title    Field
 	Sections []Section

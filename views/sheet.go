@@ -5,6 +5,7 @@ type SheetPage struct {
 	Title      string
 	Site       string
 	Mark       string // "DRAFT, not saved or released"
+	Saved      bool   // it shows a revision, and says so at the foot of each page of paper
 	Verdict    Verdict
 	Headline   string
 	Tally      string
