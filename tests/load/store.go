@@ -230,7 +230,14 @@ func runPgbench(ctx context.Context, pgbench, dsn, script string, like record.ID
 	out, err := exec.CommandContext(ctx, pgbench, append(args, dsn)...).CombinedOutput()
 	found := tpsLine.FindSubmatch(out)
 	if err != nil || found == nil || strings.Contains(string(out), "aborted") {
-		return 0, fmt.Errorf("pgbench: %w\n%s", err, out)
+		return 0, fmt.Errorf("pgbench: %v\n%s", err, out)
+	}
+	var behind int
+	err = conn.QueryRow(ctx, `
+		select count(*) from design d
+		where d.id like $1 || '-%' and d.revision <> (select max(r.number) from revision r where r.design = d.id)`, run).Scan(&behind)
+	if err != nil || behind > 0 {
+		return 0, fmt.Errorf("pgbench saved revisions that its designs do not point at: %d, %v", behind, err)
 	}
 	return strconv.ParseFloat(string(found[1]), 64)
 }
