@@ -12,8 +12,8 @@ import (
 // significant digits. Identical results give identical bytes.
 func (r *Result) AppendJSON(dst []byte) []byte {
 	w := writer{append(dst, '{')} // whatever stands before, the result begins without a comma
-	w.text("format", ResultFormat)
-	w.text("verdict", r.Verdict.String())
+	w.plain("format", ResultFormat)
+	w.plain("verdict", r.Verdict.String())
 	w.list("limits", len(r.Limits), func(i int) { w.limit(&r.Limits[i]) })
 	w.list("strings", len(r.Strings), func(i int) { w.strung(&r.Strings[i]) })
 	w.list("checks", len(r.Checks), func(i int) { w.check(&r.Checks[i]) })
@@ -49,6 +49,14 @@ func (w *writer) name(name string) {
 func (w *writer) text(name, value string) {
 	w.name(name)
 	w.dst = working.AppendJSONString(w.dst, value)
+}
+
+// plain appends a text of the engine's own making, which has nothing to escape.
+func (w *writer) plain(name, value string) {
+	w.name(name)
+	w.dst = append(w.dst, '"')
+	w.dst = append(w.dst, value...)
+	w.dst = append(w.dst, '"')
 }
 
 // textIf appends a text unless it is empty.
@@ -116,7 +124,7 @@ func (w *writer) limit(l *Limit) {
 	w.numberOrNull("min_modules", l.Counted.MinModules)
 	w.numberOrNull("min_modules_start", l.Counted.MinModulesStart)
 	w.count("max_strings", l.MaxStrings)
-	w.text("max_strings_from", l.MaxStringsFrom)
+	w.plain("max_strings_from", l.MaxStringsFrom)
 	w.numberOrNull("reached_at_c", l.ReachedAtC)
 	w.list("ceiling", len(l.Ceiling), func(i int) {
 		e := &l.Ceiling[i]
@@ -147,33 +155,33 @@ func (w *writer) strung(s *StringResult) {
 	w.number("vmp_stc_v", s.VmpSTCV)
 	w.number("vmp_hot_v", s.VmpHotV)
 	w.number("max_current_a", s.MaxCurrentA)
-	w.text("verdict", s.Verdict.String())
+	w.plain("verdict", s.Verdict.String())
 	w.shut('}')
 }
 
 func (w *writer) check(c *working.Check) {
 	w.open('{')
-	w.text("id", c.ID)
+	w.plain("id", c.ID)
 	w.about(&c.About)
-	w.text("verdict", c.Verdict.String())
+	w.plain("verdict", c.Verdict.String())
 	w.numberOrNull("value", c.Value)
 	w.numberOrNull("limit", c.Limit)
-	w.text("unit", c.Unit)
+	w.plain("unit", c.Unit)
 	w.numberOrNull("reached_at_c", c.ReachedAtC)
 	w.texts("cites", c.Cites)
 	w.steps(c.Steps)
 	w.list("turns", len(c.Turns), func(i int) {
 		t := &c.Turns[i]
 		w.open('{')
-		w.text("pointer", t.Pointer)
+		w.plain("pointer", t.Pointer)
 		w.number("at", t.At)
 		w.numberOrNull("change_pct", t.ChangePct)
-		w.text("to", t.To.String())
+		w.plain("to", t.To.String())
 		w.shut('}')
 	})
 	w.list("reasons", len(c.Reasons), func(i int) {
 		w.open('{')
-		w.text("code", c.Reasons[i].Code)
+		w.plain("code", c.Reasons[i].Code)
 		w.textIf("pointer", c.Reasons[i].Pointer)
 		w.shut('}')
 	})
@@ -199,11 +207,11 @@ func (w *writer) steps(steps []working.Step) {
 	w.list("steps", len(steps), func(i int) {
 		s := &steps[i]
 		w.open('{')
-		w.text("symbol", s.Symbol)
-		w.text("expression", s.Expression)
-		w.text("with_numbers", s.WithNumbers)
+		w.plain("symbol", s.Symbol)
+		w.plain("expression", s.Expression)
+		w.plain("with_numbers", s.WithNumbers)
 		w.number("value", s.Value)
-		w.text("unit", s.Unit)
+		w.plain("unit", s.Unit)
 		w.shut('}')
 	})
 }

@@ -118,9 +118,9 @@ func gcd(a, b uint64) uint64 {
 	return a << shift
 }
 
-// reduced returns x in lowest terms. Arithmetic leaves fractions unreduced until
+// Reduced returns x in lowest terms. Arithmetic leaves fractions unreduced until
 // they no longer fit, because most never need it.
-func (x Exact) reduced() Exact {
+func (x Exact) Reduced() Exact {
 	if x.big != nil {
 		return x
 	}
@@ -137,7 +137,7 @@ func (x Exact) Add(y Exact) Exact {
 		if z, ok := addSmall(x, y); ok {
 			return z
 		}
-		if z, ok := addSmall(x.reduced(), y.reduced()); ok {
+		if z, ok := addSmall(x.Reduced(), y.Reduced()); ok {
 			return z
 		}
 	}
@@ -177,7 +177,7 @@ func (x Exact) Mul(y Exact) Exact {
 		if z, ok := mulSmall(x, y); ok {
 			return z
 		}
-		if z, ok := mulSmall(x.reduced(), y.reduced()); ok {
+		if z, ok := mulSmall(x.Reduced(), y.Reduced()); ok {
 			return z
 		}
 	}

@@ -126,7 +126,7 @@ func (x Exact) Decimal() (places int, finite bool) {
 	places, finite = smallPlaces(x.d())
 	if !finite || places > 0 {
 		// Unreduced fractions may carry factors that cancel.
-		return smallPlaces(x.reduced().d())
+		return smallPlaces(x.Reduced().d())
 	}
 	return places, finite
 }
@@ -148,18 +148,21 @@ const SignificantDigits = 12
 // AppendJSON appends x as a JSON number: a finite decimal in full, any other
 // number rounded to [SignificantDigits], halves away from zero.
 func (x Exact) AppendJSON(dst []byte) []byte {
-	if short, ok := x.appendFinite(dst); ok {
+	if short, ok, _ := x.appendFinite(dst); ok {
 		return short
 	}
-	x = x.reduced()
-	if short, ok := x.appendFinite(dst); ok {
+	x = x.Reduced()
+	short, ok, endless := x.appendFinite(dst)
+	if ok {
 		return short
 	}
-	places, finite := x.Decimal()
-	if !finite {
+	if endless {
 		if long, ok := x.appendSignificant(dst); ok {
 			return long
 		}
+	}
+	places, finite := x.Decimal()
+	if !finite {
 		places = x.placesFor(SignificantDigits)
 	}
 	start := len(dst)
@@ -172,26 +175,30 @@ func (x Exact) AppendJSON(dst []byte) []byte {
 }
 
 // appendFinite appends a small number whose denominator has no factors but twos and
-// fives; ok is false where it has others or takes more than a machine word. The
-// fraction need not be reduced: the zeros that it brings are cut off the end.
-func (x Exact) appendFinite(dst []byte) (short []byte, ok bool) {
+// fives; ok is false where it has others, which in lowest terms makes the decimal
+// endless, or takes more than a machine word. The fraction need not be in lowest
+// terms: the zeros that it brings are cut off the end.
+func (x Exact) appendFinite(dst []byte) (short []byte, ok, endless bool) {
 	if x.big != nil {
-		return dst, false
+		return dst, false, false
 	}
 	places, finite := smallPlaces(x.d())
-	if !finite || places >= len(pow10) {
-		return dst, false
+	if !finite {
+		return dst, false, true
+	}
+	if places >= len(pow10) {
+		return dst, false, false
 	}
 	n, ok := mul64(x.num, pow10[places])
 	if !ok {
-		return dst, false
+		return dst, false, false
 	}
 	n /= x.d()
 	for places > 0 && n%10 == 0 {
 		n /= 10
 		places--
 	}
-	return appendPlaced(dst, n < 0, abs64(n), places), true
+	return appendPlaced(dst, n < 0, abs64(n), places), true, false
 }
 
 // String returns the text of [Exact.AppendJSON].

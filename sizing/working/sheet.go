@@ -12,11 +12,13 @@ import (
 // ready; one goroutine writes on it at a time. A nil Sheet makes each thing alone.
 type Sheet struct {
 	terms      []Term
+	labels     []label
 	steps      []Step
 	conditions []Condition
 	roots      []root
 	exacts     []quantity.Exact
 	text       strings.Builder
+	inputs     int // how many terms of inputs were made
 }
 
 // next returns a pointer to a zero element at the end of a slab, in a new slab of
@@ -35,6 +37,15 @@ func (s *Sheet) term() *Term {
 		return new(Term)
 	}
 	return next(&s.terms, 128)
+}
+
+func (s *Sheet) label(l label) *label {
+	if s == nil {
+		return &l
+	}
+	kept := next(&s.labels, 64)
+	*kept = l
+	return kept
 }
 
 func (s *Sheet) step() *Step {

@@ -32,21 +32,27 @@ type Input struct {
 	// The values that the reader accepts lie strictly between Low and High; nil is no
 	// bound. A turning point outside them is none, since no design can reach it.
 	Low, High *quantity.Exact
+
+	bit uint64 // one of 64, by which conditions that do not rest on the input are passed over
 }
 
 // Term is a node of a formula. Terms are immutable, may be shared between
 // formulas, and know their value.
 type Term struct {
-	op     op
-	rests  bool // an input is somewhere below
-	forks  bool // a max or min that rests on an input is somewhere below
-	a, b   *Term
-	input  *Input
-	value  quantity.Exact
-	symbol string // of an input or a named result; the text of a number
-	unit   string
-	step   *Step  // memo of a named result's line
-	sheet  *Sheet // what it is written on; nil for a constant
+	op    op
+	rests bool // an input is somewhere below
+	forks bool // a max or min that rests on an input is somewhere below
+	a, b  *Term
+	value quantity.Exact
+	label *label // of an input, a named result or a number with a symbol
+	sheet *Sheet // what it is written on; nil for a constant
+}
+
+// label is what only some terms have.
+type label struct {
+	symbol, unit string
+	input        *Input
+	step         *Step // memo of a named result's line
 }
 
 // Value returns the term's value.
@@ -75,14 +81,18 @@ var wholes = func() (w [101]*Term) {
 // Looked returns a term for a number read from a table: a bare factor in the sum,
 // a symbol in the expression.
 func Looked(symbol string, x quantity.Exact) *Term {
-	return &Term{op: opNumber, value: x, symbol: symbol}
+	return &Term{op: opNumber, value: x, label: &label{symbol: symbol}}
 }
 
 // Of returns a term for an input of the document, on this sheet; so are all
 // formulas that it stands in.
 func (s *Sheet) Of(symbol, unit string, in *Input) *Term {
+	if in.bit == 0 {
+		in.bit = 1 << (s.inputs % 64)
+		s.inputs++
+	}
 	t := s.term()
-	*t = Term{op: opInput, rests: true, input: in, value: in.Now, symbol: symbol, unit: unit, sheet: s}
+	*t = Term{op: opInput, rests: true, value: in.Now, label: s.label(label{symbol: symbol, unit: unit, input: in}), sheet: s}
 	return t
 }
 
@@ -90,8 +100,11 @@ func (s *Sheet) Of(symbol, unit string, in *Input) *Term {
 // shows the name and its numbers show the value; a value without a finite decimal
 // shows as the sum it comes from, so that no printed line is off by a rounding.
 func Named(symbol, unit string, formula *Term) *Term {
-	t := formula.sheet.term()
-	*t = Term{op: opNamed, rests: formula.rests, forks: formula.forks, a: formula, value: formula.value, symbol: symbol, unit: unit, sheet: formula.sheet}
+	s := formula.sheet
+	t := s.term()
+	*t = Term{op: opNamed, rests: formula.rests, forks: formula.forks, a: formula, sheet: s,
+		value: formula.value.Reduced(), // it is printed, and reckoned with, more than once
+		label: s.label(label{symbol: symbol, unit: unit})}
 	return t
 }
 
@@ -140,14 +153,15 @@ func (t *Term) Step() Step {
 	if t.op != opNamed {
 		panic("working: only a named term has a step")
 	}
-	if t.step == nil {
+	l := t.label
+	if l.step == nil {
 		var buf [192]byte
-		t.step = t.sheet.step()
-		*t.step = Step{Symbol: t.symbol, Value: t.value, Unit: t.unit}
-		t.step.Expression = t.sheet.keep(t.a.appendExpression(buf[:0]))
-		t.step.WithNumbers = t.sheet.keep(t.a.appendNumbers(buf[:0]))
+		l.step = t.sheet.step()
+		*l.step = Step{Symbol: l.symbol, Value: t.value, Unit: l.unit}
+		l.step.Expression = t.sheet.keep(t.a.appendExpression(buf[:0]))
+		l.step.WithNumbers = t.sheet.keep(t.a.appendNumbers(buf[:0]))
 	}
-	return *t.step
+	return *l.step
 }
 
 // Binding strength of what a term prints.
@@ -196,12 +210,12 @@ func (o op) needs() (left, right int) {
 func (t *Term) appendExpression(dst []byte) []byte {
 	switch t.op {
 	case opNumber:
-		if t.symbol == "" {
+		if t.label == nil {
 			return appendValue(dst, t.value)
 		}
-		return append(dst, t.symbol...)
+		return append(dst, t.label.symbol...)
 	case opInput, opNamed:
-		return append(dst, t.symbol...)
+		return append(dst, t.label.symbol...)
 	}
 	return t.appendOperation(dst, (*Term).appendExpression, (*Term).bindsInExpression)
 }

@@ -14,6 +14,7 @@ type Condition struct {
 	broken      bool
 	solved      bool
 	roots       []root
+	bits        uint64 // of the inputs of the roots, once asked for
 	sheet       *Sheet
 }
 
@@ -65,6 +66,16 @@ func (c *Condition) Without(in *Input) *Condition {
 	return c
 }
 
+// mayTurnBy reports whether the solved condition may have a root in the input.
+func (c *Condition) mayTurnBy(in *Input) bool {
+	if c.bits == 0 {
+		for _, r := range c.roots {
+			c.bits |= r.input.bit
+		}
+	}
+	return c.bits&in.bit != 0
+}
+
 // slope is the change of a difference for a change of one input.
 type slope struct {
 	input *Input
@@ -104,12 +115,12 @@ func gather(slopes []slope, t *Term, weight quantity.Exact) []slope {
 	switch t.op {
 	case opInput:
 		for i := range slopes {
-			if slopes[i].input == t.input {
+			if slopes[i].input == t.label.input {
 				slopes[i].by = slopes[i].by.Add(weight)
 				return slopes
 			}
 		}
-		return append(slopes, slope{t.input, weight})
+		return append(slopes, slope{t.label.input, weight})
 	case opNamed:
 		return gather(slopes, t.a, weight)
 	case opAdd:
@@ -198,7 +209,7 @@ func (t *Term) at(in *Input, x quantity.Exact) quantity.Exact {
 	}
 	switch t.op {
 	case opInput:
-		if t.input == in {
+		if t.label.input == in {
 			return x
 		}
 		return t.value
@@ -226,8 +237,8 @@ func inputsBelow(inputs []*Input, t *Term) []*Input {
 		return inputs
 	}
 	if t.op == opInput {
-		if !slices.Contains(inputs, t.input) {
-			inputs = append(inputs, t.input)
+		if !slices.Contains(inputs, t.label.input) {
+			inputs = append(inputs, t.label.input)
 		}
 		return inputs
 	}
@@ -373,10 +384,13 @@ func nearestTurn(rules []Rule, in *Input, now Verdict) (at quantity.Exact, to Ve
 	above, below := aboveBuf[:0], belowBuf[:0]
 	for i := range rules {
 		for _, c := range rules[i].Broken {
-			if c == nil || containsCondition(above, c) || containsCondition(below, c) {
+			if c == nil {
 				continue
 			}
 			c.solve()
+			if !c.mayTurnBy(in) || containsCondition(above, c) || containsCondition(below, c) {
+				continue
+			}
 			for _, r := range c.roots {
 				if r.input != in {
 					continue
