@@ -15,6 +15,7 @@ import (
 
 	"rimeline/server/record"
 	"rimeline/server/store"
+	"rimeline/tests/testdb"
 )
 
 // titled is the example design under another title.
@@ -413,6 +414,62 @@ func TestAPIRepeat_AfterACrash(t *testing.T) {
 	if designs.Total != 1 || equipment.Total != 1 || errors.Join(err, err2) != nil {
 		t.Errorf("%d designs, %d pieces of equipment (%v), want one of each", designs.Total, equipment.Total, errors.Join(err, err2))
 	}
+}
+
+// TestAPIRepeat_TwoServers: requests with one key that come to two servers on one
+// database at the same time are done once, and all that are answered have one answer.
+func TestAPIRepeat_TwoServers(t *testing.T) {
+	dsn := testdb.New(t, migrate)
+	one, kept := serverOn(t, dsn, Config{})
+	two, _ := serverOn(t, dsn, Config{})
+	text := exampleText(t)
+	const each = 4
+	answers := make([]*httptest.ResponseRecorder, 2*each)
+	var wg sync.WaitGroup
+	for i := range answers {
+		wg.Go(func() {
+			answers[i] = ask(t, []*Server{one, two}[i%2], "POST", "/api/v1/designs", text, "Idempotency-Key", "the same")
+		})
+	}
+	wg.Wait()
+	body := ""
+	for i, w := range answers {
+		switch {
+		case w.Code == 409:
+		case w.Code != 201 || body != "" && w.Body.String() != body:
+			t.Errorf("answer %d: %d %s, want 201 and what the others have", i, w.Code, w.Body)
+		default:
+			body = w.Body.String()
+		}
+	}
+	page, err := kept.Designs(t.Context(), record.Listing{})
+	if page.Total != 1 || body == "" || err != nil {
+		t.Errorf("%d designs (%v), want one", page.Total, err)
+	}
+}
+
+// FuzzEntityTags: whatever the header, the tags that are found are such, and stand in
+// it; and a tag of ours is read as what it was made of.
+func FuzzEntityTags(f *testing.F) {
+	f.Add(`"1-a", W/"b" ,,*`, uint32(3), true)
+	f.Add(`"`, uint32(0), false)
+	f.Add("\"1-"+strings.Repeat("0", 64)+"-archived\"", uint32(1<<31), true)
+	f.Fuzz(func(t *testing.T, header string, revision uint32, archived bool) {
+		number := int(revision)
+		tags, err := readTags([]string{header})
+		for _, tag := range append(tags.strong, tags.weak...) {
+			if len(tag) < 2 || tag[0] != '"' || tag[len(tag)-1] != '"' || strings.Contains(tag[1:len(tag)-1], `"`) || !strings.Contains(header, tag) {
+				t.Errorf("%q has the tag %q (%v)", header, tag, err)
+			}
+			if n, sum, gone, ok := namedRevision(tag); ok && withArchived(revisionTag(n, sum), gone) != tag {
+				t.Errorf("%q is read as revision %d, %x, archived %t", tag, n, sum, gone)
+			}
+		}
+		sum := [32]byte([]byte(fmt.Sprintf("%-32.32s", header))[:32])
+		if n, s, gone, ok := namedRevision(withArchived(revisionTag(number, sum), archived)); !ok || n != number || s != sum || gone != archived {
+			t.Errorf("revision %d, %x, archived %t is read as %d, %x, %t (%t)", number, sum, archived, n, s, gone, ok)
+		}
+	})
 }
 
 // underWay asks for every operation that is done once per key while the first request

@@ -245,19 +245,19 @@ func readMembers(text []byte, names ...string) (map[string]json.RawMessage, desi
 		if err == nil {
 			err = dec.Decode(&value)
 		}
-		text, isText := name.(string)
+		member, isText := name.(string)
 		if err != nil || !isText {
 			break // not JSON after all; what is missing then is told
 		}
-		place := "/" + strings.NewReplacer("~", "~0", "/", "~1").Replace(text)
-		_, twice := members[text]
+		place := "/" + strings.NewReplacer("~", "~0", "/", "~1").Replace(member)
+		_, twice := members[member]
 		switch {
 		case twice:
-			faults = append(faults, design.Fault{Pointer: place, Found: text + " a second time", Expected: text + " once", Detail: "Two members have the same name; leave one."})
-		case !slices.Contains(names, text):
-			faults = append(faults, design.Fault{Pointer: place, Found: fmt.Sprintf("the field %q", text), Expected: expected, Detail: "There is no such field here."})
+			faults = append(faults, design.Fault{Pointer: place, Found: member + " a second time", Expected: member + " once", Detail: "Two members have the same name; leave one."})
+		case !slices.Contains(names, member):
+			faults = append(faults, design.Fault{Pointer: place, Found: fmt.Sprintf("the field %q", member), Expected: expected, Detail: "There is no such field here."})
 		}
-		members[text] = value
+		members[member] = value
 	}
 	return members, faults
 }

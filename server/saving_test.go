@@ -18,7 +18,13 @@ import (
 // savingServer is a server on a database of its own.
 func savingServer(t *testing.T, cfg Config) (*Server, *store.Store) {
 	t.Helper()
-	kept, err := store.Open(t.Context(), testdb.New(t, migrate), slog.New(slog.NewTextHandler(t.Output(), nil)))
+	return serverOn(t, testdb.New(t, migrate), cfg)
+}
+
+// serverOn is a server on a database that others may use too.
+func serverOn(t *testing.T, dsn string, cfg Config) (*Server, *store.Store) {
+	t.Helper()
+	kept, err := store.Open(t.Context(), dsn, slog.New(slog.NewTextHandler(t.Output(), nil)))
 	if err != nil {
 		t.Fatal(err)
 	}
