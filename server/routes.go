@@ -31,6 +31,7 @@ func (s *Server) routes() chi.Router {
 		r.Post("/design/sheet", s.handle(s.showSheet))     // the stringing sheet
 		r.Post("/design/file", s.handle(s.saveFile))       // the design as a file to keep
 		r.Post("/design/open", s.handle(s.openFile))       // such a file, back into the form
+		r.Post("/design/swap", s.handle(s.showSwap))       // beside itself with something else in it
 
 		r.Get("/designs", s.handle(s.withSaving(s.showDesigns)))
 		r.Post("/designs", s.handle(s.saveDesign)) // the form, as a design or its next revision
@@ -44,6 +45,15 @@ func (s *Server) routes() chi.Router {
 		r.Post("/drafts", s.handle(s.keepDraft)) // the form as it stands, for the script and for a button
 		r.Get("/drafts/{id}", s.handle(s.withSaving(s.showDraft)))
 		r.Post("/drafts/{id}/discard", s.handle(s.withSaving(s.discardDraft)))
+
+		r.Get("/equipment", s.handle(s.withSaving(s.showEquipmentList)))
+		r.Get("/equipment/new", s.handle(s.showNewEquipment))
+		r.Post("/equipment", s.handle(s.addEquipment))
+		r.Get("/equipment/{id}", s.handle(s.withSaving(s.showEquipment)))
+		r.Post("/equipment/{id}", s.handle(s.reviseEquipment))
+		r.Post("/equipment/{id}/duplicate", s.handle(s.duplicateEquipment)) // the form of a new one; keeps nothing
+		r.Post("/equipment/{id}/archive", s.handle(s.withSaving(s.archiveEquipment)))
+		r.Post("/equipment/{id}/restore", s.handle(s.withSaving(s.restoreEquipment)))
 
 		r.Get("/api/openapi.json", s.handle(s.apiDescription))
 		r.Post("/api/v1/size", s.handle(s.apiSize))

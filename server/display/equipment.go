@@ -6,6 +6,7 @@ import (
 
 	"rimeline/sizing/design"
 	"rimeline/sizing/quantity"
+	"rimeline/views"
 )
 
 // ModuleColumns and InverterColumns are the numbers by which equipment is told apart
@@ -17,30 +18,19 @@ var (
 
 // ModuleFigures returns the numbers of modules by [ModuleColumns], a row for each, set
 // so that the points of a column stand under each other. A nil module has none.
-func ModuleFigures(modules []*design.Module) [][]string {
-	rows := make([][]string, len(modules))
-	for i, m := range modules {
-		if m == nil {
-			rows[i] = make([]string, len(ModuleColumns))
-			continue
-		}
-		rows[i] = []string{
+func ModuleFigures(modules []*design.Module) [][]views.EquipmentFigure {
+	return figures(ModuleColumns, modules, func(m *design.Module) []string {
+		return []string{
 			statedIn(m.PmaxW, "W"), statedIn(m.VocV, "V"), statedIn(m.IscA, "A"), statedIn(m.VocCoeff.Value, m.VocCoeff.UnitText), statedIn(m.MaxSystemVoltageV, "V"),
 		}
-	}
-	return aligned(rows)
+	})
 }
 
 // InverterFigures returns the numbers of inverters by [InverterColumns], as
 // [ModuleFigures] does. Trackers that differ are told apart.
-func InverterFigures(inverters []*design.Inverter) [][]string {
-	rows := make([][]string, len(inverters))
-	for i, v := range inverters {
-		if v == nil {
-			rows[i] = make([]string, len(InverterColumns))
-			continue
-		}
-		rows[i] = []string{
+func InverterFigures(inverters []*design.Inverter) [][]views.EquipmentFigure {
+	return figures(InverterColumns, inverters, func(v *design.Inverter) []string {
+		return []string{
 			statedIn(v.MaxDCVoltageV, "V"),
 			ofTrackers(v, func(t *design.Tracker) string { return stated(t.MPPTMinV) + " to " + statedIn(t.MPPTMaxV, "V") }),
 			inputsOf(v),
@@ -52,8 +42,29 @@ func InverterFigures(inverters []*design.Inverter) [][]string {
 			}),
 			optionallyIn(v.ACRatedW, "W"),
 		}
+	})
+}
+
+func figures[T any](columns []string, pieces []*T, of func(*T) []string) [][]views.EquipmentFigure {
+	rows := make([][]views.EquipmentFigure, len(pieces))
+	for i, p := range pieces {
+		rows[i] = make([]views.EquipmentFigure, len(columns))
+		for k, name := range columns {
+			rows[i][k].Name = name
+		}
+		if p == nil {
+			continue
+		}
+		for k, text := range of(p) {
+			f := &rows[i][k]
+			f.Number, f.Unit, _ = strings.Cut(text, nbsp)
+			if strings.Trim(f.Number, minus+"0123456789.") != "" {
+				f.Number, f.Unit = text, ""
+			}
+		}
 	}
-	return aligned(rows)
+	align(rows)
+	return rows
 }
 
 func optionallyIn(x *quantity.Exact, unit string) string {
@@ -91,41 +102,36 @@ const (
 	pointSpace = "\u2008" // as wide as a point
 )
 
-// aligned fills the numbers of each column up with spaces in the places of digits, so
+// align fills the numbers of each column up with spaces in the places of digits, so
 // that set flush right, with one unit, their points stand under each other.
-func aligned(rows [][]string) [][]string {
+func align(rows [][]views.EquipmentFigure) {
 	if len(rows) == 0 {
-		return rows
+		return
 	}
 	for column := range rows[0] {
 		most := 0
 		for _, row := range rows {
-			if n, ok := fraction(row[column]); ok {
-				most = max(most, n)
-			}
+			most = max(most, fraction(row[column]))
 		}
 		for _, row := range rows {
-			n, ok := fraction(row[column])
-			if !ok || n == most {
+			f := &row[column]
+			n := fraction(*f)
+			if f.Unit == "" || n == most {
 				continue
 			}
-			fill := strings.Repeat(digitSpace, most-n)
+			f.Fill = strings.Repeat(digitSpace, most-n)
 			if n == 0 {
-				fill = pointSpace + fill
+				f.Fill = pointSpace + f.Fill
 			}
-			number, unit, _ := strings.Cut(row[column], nbsp)
-			row[column] = number + fill + nbsp + unit
 		}
 	}
-	return rows
 }
 
-// fraction returns how many digits a single number with its unit has behind the point.
-func fraction(cell string) (digits int, ok bool) {
-	number, _, found := strings.Cut(cell, nbsp)
-	if !found || strings.Trim(number, minus+"0123456789.") != "" {
-		return 0, false
+// fraction returns how many digits a number with a unit has behind its point.
+func fraction(f views.EquipmentFigure) int {
+	_, behind, found := strings.Cut(f.Number, ".")
+	if !found || f.Unit == "" {
+		return 0
 	}
-	_, behind, _ := strings.Cut(number, ".")
-	return len(behind), true
+	return len(behind)
 }

@@ -7,6 +7,7 @@ import (
 	"github.com/google/go-cmp/cmp"
 
 	"rimeline/sizing/design"
+	"rimeline/views"
 )
 
 // TestFigures: the example's own numbers, in the columns of a list; ~ is the space of a
@@ -16,7 +17,7 @@ func TestFigures(t *testing.T) {
 	differing := changed(t, change{"/inverters/0/trackers/1/inputs", 1}, change{"/inverters/0/trackers/1/mppt_max_v", 800},
 		change{"/inverters/0/trackers/1/max_short_circuit_current_a", nil}, change{"/inverters/0/ac_rated_w", nil})
 	for name, c := range map[string]struct {
-		got  [][]string
+		got  [][]views.EquipmentFigure
 		want []string
 	}{
 		"modules": {ModuleFigures([]*design.Module{&c.d.Modules[0], nil, &c.d.Modules[1]}), []string{
@@ -32,7 +33,11 @@ func TestFigures(t *testing.T) {
 	} {
 		var got []string
 		for _, row := range c.got {
-			got = append(got, strings.NewReplacer(nbsp, " ", digitSpace, "~", pointSpace, "'").Replace(strings.Join(row, "|")))
+			var cells []string
+			for _, f := range row {
+				cells = append(cells, strings.TrimSpace(f.Number+f.Fill+" "+f.Unit))
+			}
+			got = append(got, strings.NewReplacer(nbsp, " ", digitSpace, "~", pointSpace, "'").Replace(strings.Join(cells, "|")))
 		}
 		if diff := cmp.Diff(c.want, got); diff != "" {
 			t.Errorf("%s (-want +got)\n%s", name, diff)
