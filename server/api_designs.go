@@ -178,7 +178,13 @@ func (s *Server) apiReviseDesign(w http.ResponseWriter, r *http.Request, saved S
 		if save.Base, err = matchedRevision(ctx, saved, &d, match); err != nil {
 			return record.Answer{}, err
 		}
-		return s.apiSave(ctx, r, saved, http.StatusOK, save)
+		answer, err := s.apiSave(ctx, r, saved, http.StatusOK, save)
+		if used, ok := errors.AsType[*record.UsedError](err); ok && match.any && used.Made == d.ID {
+			// What * stood for may have been what this same request then saved.
+			save.Base = int(used.Number) - 1
+			answer, err = s.apiSave(ctx, r, saved, http.StatusOK, save)
+		}
+		return answer, err
 	})
 }
 

@@ -402,12 +402,20 @@ func TestAPIRepeat_AfterACrash(t *testing.T) {
 	if d := decode[apiDesign](t, revised); d.Revision != 2 {
 		t.Errorf("repeated: revision %d, want 2", d.Revision)
 	}
+	revised = twice(200, "PUT", one, text, "If-Match", "*", "Idempotency-Key", "k2 *")
+	if d := decode[apiDesign](t, revised); d.Revision != 3 {
+		t.Errorf("repeated on *: revision %d, want 3", d.Revision)
+	}
 	module := `{"module":` + keptPiece(t, record.KindModule) + `}`
 	made = twice(201, "POST", "/api/v1/equipment", module, "Idempotency-Key", "k3")
 	one, tag = made.Header().Get("Location"), made.Header().Get("ETag")
 	revised = twice(200, "PUT", one, module, "If-Match", tag, "Idempotency-Key", "k4")
 	if e := decode[apiKept](t, revised); e.Version != 2 {
 		t.Errorf("repeated: version %d, want 2", e.Version)
+	}
+	revised = twice(200, "PUT", one, module, "If-Match", "*", "Idempotency-Key", "k4 *")
+	if e := decode[apiKept](t, revised); e.Version != 3 {
+		t.Errorf("repeated on *: version %d, want 3", e.Version)
 	}
 	designs, err := kept.Designs(t.Context(), record.Listing{})
 	equipment, err2 := kept.EquipmentList(t.Context(), record.EquipmentListing{})

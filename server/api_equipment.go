@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"context"
 	"encoding/json"
+	"errors"
 	"fmt"
 	"net/http"
 	"net/url"
@@ -111,7 +112,13 @@ func (s *Server) apiReviseEquipment(w http.ResponseWriter, r *http.Request, save
 		if e.Version, err = matchedVersion(&now, match); err != nil {
 			return record.Answer{}, err
 		}
-		return s.apiKeep(ctx, r, saved, http.StatusOK, e, key)
+		answer, err := s.apiKeep(ctx, r, saved, http.StatusOK, e, key)
+		if used, ok := errors.AsType[*record.UsedError](err); ok && match.any && used.Made == e.ID {
+			// What * stood for may have been what this same request then saved.
+			e.Version = used.Number - 1
+			answer, err = s.apiKeep(ctx, r, saved, http.StatusOK, e, key)
+		}
+		return answer, err
 	})
 }
 

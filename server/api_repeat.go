@@ -42,8 +42,11 @@ func (s *Server) once(w http.ResponseWriter, r *http.Request, saved Saving, do f
 	if err != nil {
 		return err
 	}
+	// What was asked is done though the asker may not wait for the answer; each call of
+	// the store has its own limit of time.
+	ctx := context.WithoutCancel(r.Context())
 	if key == "" {
-		answer, err := do(r.Context(), "")
+		answer, err := do(ctx, "")
 		if err != nil {
 			return err
 		}
@@ -61,7 +64,7 @@ func (s *Server) once(w http.ResponseWriter, r *http.Request, saved Saving, do f
 		}
 	}
 	defer s.underWay.Delete(working)
-	answer, repeated, err := saved.Remember(r.Context(), actor, key, requestHash(r),
+	answer, repeated, err := saved.Remember(ctx, actor, key, requestHash(r),
 		func(ctx context.Context) (record.Answer, error) { return do(ctx, key) })
 	if errors.Is(err, record.ErrConflict) {
 		return &statusError{
