@@ -163,6 +163,13 @@ func (b *pageBuilder) called(pointer string) (of, name string) {
 	if strings.HasPrefix(pointer, "/strings/") && b.form.Len("/strings") == 1 {
 		of = "Strings"
 	}
+	if strings.HasPrefix(pointer, "/other_limits/") {
+		for _, q := range otherLimitInquiries {
+			if q.name == lastSegment(pointer) {
+				return of, q.label
+			}
+		}
+	}
 	name = labels[lastSegment(pointer)]
 	if name == "" {
 		name = pointer

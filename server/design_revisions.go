@@ -90,6 +90,7 @@ func (s *Server) showRevision(w http.ResponseWriter, r *http.Request, saved Savi
 	if read.Design == nil {
 		// A later edition of the format may refuse what an earlier one took.
 		p.Engine = views.Recheck{
+			Heading: "It cannot be sized again",
 			Words:  fmt.Sprintf("The reader of today refuses what was saved then, so that it cannot be sized again. The verdict then was %s.", rev.Frozen.Verdict),
 			SHA256: hex.EncodeToString(rev.Frozen.SHA256[:]),
 		}
@@ -139,11 +140,18 @@ func recheck(f record.Frozen, d *design.Design, result *sizing.Result, engine st
 		}
 		return c
 	}
-	c.Words = fmt.Sprintf("When this revision was saved, %s found: %s. Sized again just now by %s, it is: %s. "+
-		"What stands below is what is found today; what was found then is kept with the revision and listed here where a verdict differs.",
-		calledEngine(f.Engine), f.Verdict, calledEngine(engine), result.Verdict)
 	was, after, changes := display.ResultChanges(f.Result, d, result)
-	c.Was, c.Now, c.Changes = &was, &after, changes
+	c.Was, c.Now, c.Changes = was, after, changes
+	if len(changes) == 0 {
+		c.Heading = "Every check comes out the same; the working is written otherwise"
+		c.Words = fmt.Sprintf("%s found the same verdicts, values and limits when this revision was saved as %s does now. What stands below is the working of today.",
+			upperFirst(calledEngine(f.Engine)), calledEngine(engine))
+		return c
+	}
+	c.Heading = "The engine of today finds something else"
+	c.Words = fmt.Sprintf("When this revision was saved, %s found: %s. Sized again just now by %s, it is: %s. "+
+		"What stands below is what is found today; what was found then is kept with the revision, and differs in the following.",
+		calledEngine(f.Engine), f.Verdict, calledEngine(engine), result.Verdict)
 	return c
 }
 
@@ -161,11 +169,11 @@ func (s *Server) compareRevisions(w http.ResponseWriter, r *http.Request, saved 
 	if err != nil {
 		return err
 	}
-	to, err := askedRevision(query, "to", d.Revision)
+	to, err := askedRevision(query, "to", d.Revision, d.Revision)
 	if err != nil {
 		return err
 	}
-	from, err := askedRevision(query, "from", max(to-1, 1))
+	from, err := askedRevision(query, "from", max(to-1, 1), d.Revision)
 	if err != nil {
 		return err
 	}

@@ -27,7 +27,7 @@ func (s *Server) showSaved(w http.ResponseWriter, r *http.Request, saved Saving)
 	if err != nil {
 		return err
 	}
-	from, err := askedRevision(query, "from", d.Revision)
+	from, err := askedRevision(query, "from", d.Revision, d.Revision)
 	if err != nil {
 		return err
 	}
@@ -65,11 +65,11 @@ func (s *Server) showSaved(w http.ResponseWriter, r *http.Request, saved Saving)
 	return s.render(w, r, http.StatusOK, views.Design(p))
 }
 
-// askedRevision reads the number of a revision out of a query; without one it is the
-// newest.
-func askedRevision(query url.Values, name string, newest int) (int, error) {
+// askedRevision reads the number of a revision out of a query, which may leave it to
+// us.
+func askedRevision(query url.Values, name string, without, newest int) (int, error) {
 	if !query.Has(name) {
-		return newest, nil
+		return without, nil
 	}
 	n, err := strconv.Atoi(query.Get(name))
 	if err != nil || n < 1 || n > newest {

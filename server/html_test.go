@@ -108,9 +108,13 @@ func (p page) fields(form string) url.Values {
 		p.t.Fatalf("no form %q", form)
 	}
 	sent := url.Values{}
+	inside := map[*html.Node]bool{}
 	for n := range at.Descendants() {
+		inside[n] = true
+	}
+	for _, n := range p.all(func(n *html.Node) bool { return attr(n, "name") != "" }) {
 		name := attr(n, "name")
-		if n.Type != html.ElementNode || name == "" {
+		if of := attr(n, "form"); of != form && (of != "" || !inside[n]) {
 			continue
 		}
 		switch n.DataAtom {
@@ -199,10 +203,10 @@ func (p page) sound() {
 				p.t.Error("the content policy forbids script inside the page")
 			}
 		case atom.Input, atom.Select, atom.Textarea:
-			if name := attr(n, "name"); name != "" && !strings.HasPrefix(attr(n, "id"), "open-") {
+			if name := attr(n, "name"); strings.HasPrefix(name, "/") {
 				names[name]++
 			}
-			if attr(n, "type") != "hidden" && !labelled[attr(n, "id")] && attr(n, "aria-label") == "" {
+			if attr(n, "type") != "hidden" && attr(n, "type") != "radio" && !labelled[attr(n, "id")] && attr(n, "aria-label") == "" {
 				p.t.Errorf("the field %s has no label", attr(n, "name"))
 			}
 			if has(n, "maxlength") || has(n, "required") || attr(n, "inputmode") == "decimal" || attr(n, "type") == "number" {

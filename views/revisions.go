@@ -44,10 +44,11 @@ type RevisionPage struct {
 // Recheck tells whether the engine of today finds what the one of then found.
 type Recheck struct {
 	Same    bool
+	Heading string // where it is not the same
 	Words   string
-	Was     *ComparedSide // what was found then, where it differs
-	Now     *ComparedSide
-	Changes []ChangeGroup
+	Was     ComparedSide // what was found then
+	Now     ComparedSide
+	Changes []ChangeGroup // the checks that differ
 	SHA256  string
 }
 
