@@ -114,13 +114,7 @@ func gather(slopes []slope, t *Term, weight quantity.Exact) []slope {
 	}
 	switch t.op {
 	case opInput:
-		for i := range slopes {
-			if slopes[i].input == t.label.input {
-				slopes[i].by = slopes[i].by.Add(weight)
-				return slopes
-			}
-		}
-		return append(slopes, slope{t.label.input, weight})
+		return addSlope(slopes, t.label.input, weight)
 	case opNamed:
 		return gather(slopes, t.a, weight)
 	case opAdd:
@@ -142,6 +136,16 @@ func gather(slopes []slope, t *Term, weight quantity.Exact) []slope {
 		return gather(slopes, t.a, weight.Quo(t.b.value))
 	}
 	panic("working: a fork has no slope")
+}
+
+func addSlope(slopes []slope, in *Input, by quantity.Exact) []slope {
+	for i := range slopes {
+		if slopes[i].input == in {
+			slopes[i].by = slopes[i].by.Add(by)
+			return slopes
+		}
+	}
+	return append(slopes, slope{in, by})
 }
 
 // solveForked finds the roots of a difference with a max or min in it: between
@@ -397,19 +401,29 @@ func nearestTurn(rules []Rule, in *Input, now Verdict) (at quantity.Exact, to Ve
 				}
 				side := r.at.Cmp(in.Now)
 				if side > 0 || side == 0 && r.rising {
-					above = append(above, event{in.reached(r, true), c})
+					above = insert(above, event{in.reached(r, true), c}, 1)
 				} else {
-					below = append(below, event{in.reached(r, false), c})
+					below = insert(below, event{in.reached(r, false), c}, -1)
 				}
 			}
 		}
 	}
-	up, toUp := sweep(rules, in, above, now, quantity.Exact.Cmp)
-	down, toDown := sweep(rules, in, below, now, func(a, b quantity.Exact) int { return b.Cmp(a) })
+	up, toUp := sweep(rules, in, above, now)
+	down, toDown := sweep(rules, in, below, now)
 	if toUp == now || toDown != now && in.Now.Sub(down).Less(up.Sub(in.Now)) {
 		return down, toDown
 	}
 	return up, toUp
+}
+
+// insert puts an event into a list that is ordered outwards: upwards for side 1,
+// downwards for −1. The lists are too short for a library's sort to pay.
+func insert(events []event, e event, side int) []event {
+	events = append(events, e)
+	for i := len(events) - 1; i > 0 && events[i].at.Cmp(events[i-1].at)*side < 0; i-- {
+		events[i], events[i-1] = events[i-1], events[i]
+	}
+	return events
 }
 
 func containsCondition(events []event, c *Condition) bool {
@@ -433,10 +447,9 @@ func (in *Input) reached(r root, up bool) quantity.Exact {
 	return r.at.Ceil().Sub(quantity.Int(1))
 }
 
-// sweep passes the events outwards from now and returns the first value at which
+// sweep passes the events, which are ordered outwards, and returns the first value at which
 // the verdict is another, and which; the verdict now where there is none.
-func sweep(rules []Rule, in *Input, events []event, now Verdict, outwards func(a, b quantity.Exact) int) (quantity.Exact, Verdict) {
-	slices.SortStableFunc(events, func(a, b event) int { return outwards(a.at, b.at) })
+func sweep(rules []Rule, in *Input, events []event, now Verdict) (quantity.Exact, Verdict) {
 	var buf [12]*Condition
 	flipped := buf[:0]
 	for i, e := range events {
