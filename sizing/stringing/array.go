@@ -46,7 +46,10 @@ type entry struct {
 	index                    int
 	inverter, tracker, plane int
 	terms                    design.StringTerms
-	vocCold                  *working.Term // V, the string's
+	vocCold, hot             *working.Term // V, the string's: open circuit when cold, operating when hot
+	steeper                  *working.Term // V, hot, by the steeper slope; nil where it is not the lower of the two
+	meets                    *working.Term // °C, where the string meets its ceiling; nil where it does not
+	reachedAtC               *quantity.Exact
 }
 
 // NewArray prepares a design that has passed the reader. The rulebook must exist.
@@ -91,7 +94,14 @@ func NewArray(d *design.Design) *Array {
 				e.plane = k
 			}
 		}
-		e.vocCold = working.Named("Vcold", "V", e.terms.Series.Times(a.planes[e.plane].vocCold))
+		v, n := &a.planes[e.plane], e.terms.Series
+		e.vocCold = working.Named("Vcold", "V", n.Times(v.vocCold))
+		e.hot = working.Named("Vhot", "V", n.Times(v.vmpHot))
+		if v.steeper != nil && quantity.Int(25).Less(v.cellHot.Value()) {
+			e.steeper = working.Named("Vhot,steeper", "V", n.Times(v.steeper))
+		}
+		_, ceiling := a.ceiling(v, e.inverter)
+		e.reachedAtC, e.meets = a.reachedAt(v, n, ceiling)
 		a.wired[i] = e
 	}
 	return a

@@ -137,10 +137,9 @@ func (a *Array) voltageCeiling(e *entry) working.Check {
 		rules = append(rules, rule(working.Outside, "", a.exceedsCold(v, e.terms.Series, e.vocCold, entries[i].term, a.byTable())))
 	}
 	rules = a.doubtRules(rules, e.plane, "voltage-ceiling")
-	reached, _ := a.reachedAt(v, e.terms.Series, ceiling)
 	return judged(working.Check{
 		ID: "voltage-ceiling", About: aboutString(e),
-		Value: a.valueOf(e.vocCold), Limit: a.valueOf(ceiling), Unit: "V", ReachedAtC: reached,
+		Value: a.valueOf(e.vocCold), Limit: a.valueOf(ceiling), Unit: "V", ReachedAtC: e.reachedAtC,
 		Cites: a.cites.ceiling,
 		Steps: shown(append(append([]*working.Term{ceiling}, v.coldSteps...), e.vocCold)...),
 	}, rules)
@@ -153,15 +152,14 @@ func (a *Array) headroom(e *entry) working.Check {
 	v := &a.planes[e.plane]
 	n := e.terms.Series
 	entries, ceiling := a.ceiling(v, e.inverter)
-	reached, at := a.reachedAt(v, n, ceiling)
 	check := working.Check{
-		ID: "headroom", About: aboutString(e), Limit: a.valueOf(a.terms.Headroom), Unit: "°C", ReachedAtC: reached,
+		ID: "headroom", About: aboutString(e), Limit: a.valueOf(a.terms.Headroom), Unit: "°C", ReachedAtC: e.reachedAtC,
 		Cites: a.cites.cold,
 	}
-	if at != nil {
-		gap := working.Named("headroom", "°C", a.terms.Coldest.Minus(at))
+	if e.meets != nil {
+		gap := working.Named("headroom", "°C", a.terms.Coldest.Minus(e.meets))
 		check.Value = a.valueOf(gap)
-		check.Steps = shown(ceiling, a.terms.Coldest, at, gap)
+		check.Steps = shown(ceiling, a.terms.Coldest, e.meets, gap)
 	}
 	rules := a.rulesFor()
 	for i := range entries {

@@ -5,11 +5,6 @@ import (
 	"rimeline/sizing/working"
 )
 
-// operatingString returns the string's hot operating voltage.
-func (a *Array) operatingString(e *entry) *working.Term {
-	return working.Named("Vhot", "V", e.terms.Series.Times(a.planes[e.plane].vmpHot))
-}
-
 // hotMinimum judges that on the hottest roof the string stays in the tracker's window.
 func (a *Array) hotMinimum(e *entry) working.Check {
 	_, k := a.trackerOf(e)
@@ -28,19 +23,15 @@ func (a *Array) fullPowerLow(e *entry) working.Check {
 // about that much; not met then is a caution with both values.
 func (a *Array) reaches(id string, e *entry, minimum *working.Term, broken working.Verdict) working.Check {
 	v, n := &a.planes[e.plane], e.terms.Series
-	hot := a.operatingString(e)
-	terms := a.hotSteps(v)
+	terms := append(a.hotSteps(v), e.steeper, e.hot)
 	rules := append(a.rulesFor(), rule(broken, "", v.heldHot.below(minimum, n)))
 	if v.slope.standIn {
 		rules = append(rules, rule(working.Caution, "stand-in-coefficient", v.heldSteeper.below(minimum, n)))
-		if quantity.Int(25).Less(v.cellHot.Value()) { // at 25 °C and below it is not the lower of the two
-			terms = append(terms, working.Named("Vhot,steeper", "V", n.Times(v.steeper)))
-		}
 	}
 	return judged(working.Check{
-		ID: id, About: aboutString(e), Value: a.valueOf(hot), Limit: a.valueOf(minimum), Unit: "V",
+		ID: id, About: aboutString(e), Value: a.valueOf(e.hot), Limit: a.valueOf(minimum), Unit: "V",
 		Cites: a.cites.instructions,
-		Steps: shown(append(terms, hot)...),
+		Steps: shown(terms...),
 	}, a.doubtRules(rules, e.plane, id))
 }
 
