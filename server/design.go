@@ -16,6 +16,7 @@ import (
 
 	"rimeline/server/display"
 	"rimeline/server/form"
+	"rimeline/server/record"
 	"rimeline/sizing/design"
 	"rimeline/static"
 	"rimeline/views"
@@ -26,10 +27,17 @@ import (
 //go:embed example-design.json
 var exampleDesign []byte
 
-// showDesign shows the empty form.
+// showDesign shows the empty form, or one that begins with kept equipment.
 func (s *Server) showDesign(w http.ResponseWriter, r *http.Request) error {
-	p := s.designPage(r, newBase("Size strings", "/design"), judge(form.New()), marking{}, newOrigin())
-	p.Fresh = true
+	f := form.New()
+	id := r.URL.Query().Get("equipment")
+	if id != "" {
+		if err := s.putFirst(r.Context(), f, record.ID(id)); err != nil {
+			return err
+		}
+	}
+	p := s.designPage(r, newBase("Size strings", "/design"), judge(f), marking{}, newOrigin())
+	p.Fresh = id == ""
 	return s.render(w, r, http.StatusOK, views.Design(p))
 }
 
@@ -52,6 +60,9 @@ func (s *Server) sizeDesign(w http.ResponseWriter, r *http.Request) error {
 	do := r.PostForm.Get("do")
 	if do == "" {
 		return s.showJudged(w, r, judge(f))
+	}
+	if verb, at, _ := strings.Cut(do, " "); verb == "pick" || verb == "keep" {
+		return s.workWithKept(w, r, f, verb, at)
 	}
 	focus, err := change(f, do)
 	if err != nil {

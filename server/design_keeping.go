@@ -52,5 +52,8 @@ func away(err error) string {
 func (s *Server) designPage(r *http.Request, base views.Base, j judged, m marking, o origin) views.DesignPage {
 	p := newDesignPage(base, j, m)
 	p.Keeping = s.keeping(r, o)
+	if p.Keeping.Away == "" {
+		s.offerKept(r, &p)
+	}
 	return p
 }

@@ -158,6 +158,7 @@ func (b *pageBuilder) module(k int, at string) views.Group {
 		Folds: []views.Fold{b.fold(at, "Further values of the datasheet", "Each is optional; where one is missing the answer says what it used instead.",
 			append(b.fields(at, moduleMore), b.source(at, "Where these values come from")))},
 	}
+	g.Folds = append(g.Folds, b.valueSources(at)...)
 	if b.form.Len("/modules") > 1 {
 		g.Heading, g.Class = fmt.Sprintf("Module %d", k+1), "entry"
 		g.Buttons = []views.Button{{Do: "remove " + at, Words: "Remove", Spoken: g.Heading}}
@@ -174,6 +175,7 @@ func (b *pageBuilder) inverter(k int, at string) views.Group {
 		Groups: b.entries(at+"/trackers", b.tracker),
 		Add:    b.adding(at+"/trackers", "Add a tracker", ""),
 	}
+	g.Folds = append(g.Folds, b.valueSources(at)...)
 	for i := range g.Fields {
 		g.Fields[i].Renews = g.Fields[i].Name == at+"/quantity"
 	}
@@ -354,11 +356,29 @@ func (b *pageBuilder) source(at, label string) views.Field {
 	}
 }
 
+// valueSources are the fields for where single values of a module or an inverter come
+// from, folded away; none where none is stated, as kept equipment does.
+func (b *pageBuilder) valueSources(at string) []views.Fold {
+	fold := views.Fold{ID: views.FieldID(at) + "-sources", Words: "Where each value stands on the datasheet"}
+	for _, name := range inPageOrder(b.form.Names(form.SourceName(at + "/"))) {
+		f := views.Field{
+			ID: views.FieldID(name), Name: name, Label: "Where: " + valueName(form.SourceOf(name)), Value: b.form.Text(name),
+			Width: "w3", Fault: strings.Join(b.marked[name], " "),
+		}
+		fold.Open = fold.Open || f.Fault != ""
+		fold.Fields = append(fold.Fields, f)
+	}
+	if len(fold.Fields) == 0 {
+		return nil
+	}
+	return []views.Fold{fold}
+}
+
 // hasOwnSource reports whether the source of what is at a pointer is a field of its module or inverter.
 func (b *pageBuilder) hasOwnSource(pointer string) bool {
 	for _, list := range []string{"/modules", "/inverters"} {
 		for k := range b.form.Len(list) {
-			if pointer == pointerOf(list, k) {
+			if at := pointerOf(list, k); pointer == at || strings.HasPrefix(pointer, at+"/") {
 				return true
 			}
 		}

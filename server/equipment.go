@@ -99,34 +99,45 @@ func (p *piece) copy(field, text string) {
 // read judges the piece: it returns it as it is to be kept, or every reason why it
 // cannot be, and the questions about it that are open.
 func (p *piece) read() (record.Equipment, design.Faults, []working.Question) {
-	at := p.at()
-	e := record.Equipment{
-		ID: p.id, Kind: p.kind, Version: p.version, Note: strings.TrimSpace(p.note),
-		Sources: p.form.Sources(at), Answers: p.form.Answers(at),
+	e, faults := readEntry(p.form, listOf(p.kind), p.at())
+	e.ID, e.Version, e.Note = p.id, p.version, strings.TrimSpace(p.note)
+	if faults != nil || p.kind != record.KindModule {
+		return e, faults, nil
 	}
+	m, faults := design.ReadModule(e.Document)
+	if faults != nil {
+		return e, faults, nil // it was written a moment ago
+	}
+	questions := m.Questions(e.Answers)
+	for i := range questions {
+		questions[i].Pointer = p.at() + questions[i].Pointer
+	}
+	return e, nil, questions
+}
+
+// readEntry reads a module or an inverter of a form as equipment, or returns every
+// reason why it cannot be kept. It must have a model, by which it is found again.
+func readEntry(f *form.Form, list, at string) (record.Equipment, design.Faults) {
+	e := record.Equipment{Kind: record.KindModule, Sources: f.Sources(at), Answers: f.Answers(at)}
 	var faults design.Faults
-	var questions []working.Question
-	if p.kind == record.KindModule {
-		var m *design.Module
-		if m, faults = p.form.ReadModule(at); m != nil {
-			e.Maker, e.Model, e.Document = m.Maker, m.Model, design.AppendModule(nil, m)
-			questions = m.Questions(e.Answers)
-		}
-	} else {
+	if list == listOf(record.KindInverter) {
+		e.Kind = record.KindInverter
 		var v *design.Inverter
-		if v, faults = p.form.ReadInverter(at); v != nil {
+		if v, faults = f.ReadInverter(at); v != nil {
 			e.Maker, e.Model, e.Document = v.Maker, v.Model, design.AppendInverter(nil, v)
 		}
+	} else {
+		var m *design.Module
+		if m, faults = f.ReadModule(at); m != nil {
+			e.Maker, e.Model, e.Document = m.Maker, m.Model, design.AppendModule(nil, m)
+		}
 	}
-	if strings.TrimSpace(p.form.Text(at+"/model")) == "" {
+	if strings.TrimSpace(f.Text(at+"/model")) == "" {
 		faults = append(design.Faults{{
 			Pointer: at + "/model", Found: "nothing", Expected: "a model", Detail: "Enter the model, by which it is found again.",
 		}}, faults...)
 	}
-	for i := range questions {
-		questions[i].Pointer = at + questions[i].Pointer
-	}
-	return e, faults, questions
+	return e, faults
 }
 
 // askedEquipment reads what the list is asked for. What it does not know is left aside.

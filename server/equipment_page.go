@@ -540,17 +540,26 @@ func pieceFieldName(field string) string {
 	if isSource {
 		of = form.SourceOf(field)
 	}
-	name := labels[lastSegment(of)]
+	name := valueName(of)
 	if strings.Count(of, "/") == 2 {
 		name = "the datasheet as a whole"
-	}
-	if tracker := trackerOf(of[:max(0, strings.LastIndexByte(of, '/'))]); tracker != "" {
-		name += " of " + tracker
 	}
 	if isSource {
 		return "Where on the datasheet: " + name
 	}
 	return upperFirst(name)
+}
+
+// valueName is what the value at a pointer is called without its module or inverter.
+func valueName(pointer string) string {
+	name := labels[lastSegment(pointer)]
+	if name == "" {
+		name = lastSegment(pointer)
+	}
+	if tracker := trackerOf(pointer[:max(0, strings.LastIndexByte(pointer, '/'))]); tracker != "" {
+		name += " of " + tracker
+	}
+	return name
 }
 
 // usedIn tells which designs carry a copy of a piece.

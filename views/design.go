@@ -46,6 +46,20 @@ type Group struct {
 	Groups  []Group
 	Buttons []Button
 	Add     *Button
+	Kept    *KeptOffer // of a module or an inverter, where equipment is kept
+}
+
+// KeptOffer leads from a module or an inverter of a design to the equipment that is
+// kept, and back.
+type KeptOffer struct {
+	ID      string // of the list
+	Name    string
+	Label   string
+	Choices []Choice // none where nothing is kept
+	Take    Button
+	Keep    Button
+	Said    string // what has just been done, "" if nothing was
+	Link    *Link
 }
 
 // Fold is fields that may be folded away.

@@ -44,10 +44,12 @@ func (f *Form) ReadInverter(at string) (*design.Inverter, design.Faults) {
 
 func (f *Form) clone() *Form { return &Form{texts: maps.Clone(f.texts), lens: maps.Clone(f.lens)} }
 
-// piece writes the entry at a pointer as a document of its own, without its id.
+// piece writes the entry at a pointer as a document of its own, without its id and its
+// quantity, which are the design's.
 func (f *Form) piece(at string) writer {
 	w := writer{form: f.clone()}
 	delete(w.form.texts, at+"/id")
+	delete(w.form.texts, at+"/quantity")
 	list, _, ok := f.entryAt(at)
 	if !ok {
 		w.dst = append(w.dst, "{}"...)
