@@ -62,6 +62,7 @@ func TestMain(m *testing.M) {
 	if chrome.cancel != nil {
 		chrome.cancel()
 	}
+	removeProgram()
 	os.Exit(status)
 }
 
