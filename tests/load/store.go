@@ -1,15 +1,20 @@
 package main
 
 import (
+	"bytes"
 	"context"
 	"crypto/rand"
 	"encoding/hex"
 	"errors"
 	"fmt"
+	"io"
+	"net/http"
+	"net/url"
 	"os"
 	"os/exec"
 	"path/filepath"
 	"regexp"
+	"slices"
 	"strconv"
 	"strings"
 	"sync"
@@ -17,22 +22,17 @@ import (
 
 	"github.com/jackc/pgx/v5"
 
-	"rimeline/server/localpg"
+	"rimeline/server/form"
 	"rimeline/server/record"
 	"rimeline/server/store"
-	"rimeline/sizing/design"
 	"rimeline/sizing/quantity"
-	"rimeline/tests/seed"
 )
-
-// clients is how many save or read at the same time.
-const clients = 16
 
 var loader = record.Actor{ID: "load", Name: "Load"}
 
-// saving is a save as server/store makes it, for pgbench: a further revision of the
+// savingScript is a save as server/store makes it, for pgbench: a further revision of the
 // client's own design.
-const saving = `
+const savingScript = `
 \set number :number + 1
 begin;
 insert into save_request (actor, key, content, made, number)
@@ -50,9 +50,9 @@ insert into revision_use (design, number, place, kind, maker, model, sought)
 commit;
 `
 
-// listing is a page of the list of designs as server/store asks for it: of a random
+// listingScript is a page of the list of designs as server/store asks for it: of a random
 // place in the list, so that not always the same page is read.
-const listing = `
+const listingScript = `
 \set days random(0, 1000)
 select count(*) from (select 1 from design where archived_at is null limit 1001) as counted;
 select id, title, site, revision, verdict::text, headroom_c::text, created_at, created_by, created_by_name,
@@ -61,84 +61,135 @@ select id, title, site, revision, verdict::text, headroom_c::text, created_at, c
 	order by design.updated_at desc, design.id desc limit 51;
 `
 
-// measureStore compares the store with pgbench, which sends the same statements to the
-// same database and does nothing else.
-func measureStore(ctx context.Context, dir string, text []byte) error {
-	pgbench, err := findPgbench()
+// saving are saves and lists beside pgbench, which sends the same statements to the same
+// database and does nothing else: through the service, and through the store alone.
+func (b *bench) saving() ([]comparison, error) {
+	pgbench := func(name, content string) (func(context.Context) (figures, error), error) {
+		script := filepath.Join(b.dir, name)
+		return func(ctx context.Context) (figures, error) { return b.runPgbench(ctx, script) }, os.WriteFile(script, []byte(content), 0o600)
+	}
+	plainSave, err := pgbench("save.sql", savingScript)
 	if err != nil {
-		return err
+		return nil, err
 	}
-	if err := os.Chmod(dir, 0o711); err != nil { // PostgreSQL's own user goes through it
-		return err
-	}
-	dir = filepath.Join(dir, "pg")
-	pg, err := localpg.Start(ctx, localpg.Options{Dir: dir, Getenv: os.Getenv})
+	plainList, err := pgbench("list.sql", listingScript)
 	if err != nil {
-		return err
+		return nil, err
 	}
-	defer pg.Stop(context.WithoutCancel(ctx))
-	s, err := store.Open(ctx, pg.DSN(), nil)
+	fields, _, err := form.FromDocument(b.frozen.Document)
 	if err != nil {
-		return err
+		return nil, err
 	}
-	defer s.Close()
-	if err := s.Migrate(ctx); err != nil {
-		return err
+	typed := url.Values{}
+	for _, name := range fields.Names("/") {
+		typed.Set(name, fields.Text(name))
 	}
-	doc := design.Read(text)
-	if doc.Design == nil {
-		return fmt.Errorf("the design is refused: %v", doc.Faults)
+	// Clients begin anew each time, with a design of their own.
+	saves := func(saver func() func(ctx context.Context, client int) error) func(context.Context) (figures, error) {
+		return func(ctx context.Context) (figures, error) { return again(ctx, saver()) }
 	}
-	frozen := record.Freeze(doc.Design, "load")
-	short := frozen
-	short.Result = []byte("{}") // lists do not look at it
-	if err := seed.Designs(ctx, pg.DSN(), 20_000, short); err != nil {
-		return err
+	get := func(path string) func(context.Context) (figures, error) {
+		return func(ctx context.Context) (figures, error) { return wrk(ctx, clients, b.service+path, "") }
 	}
-
-	first, err := s.SaveRevision(ctx, loader, store.Save{Frozen: frozen})
-	if err != nil {
-		return err
-	}
-
-	fmt.Printf("\n%d clients, a database of 20000 designs, a revision of %d + %d bytes\n", clients, len(frozen.Document), len(frozen.Result))
-	for _, c := range []struct {
-		name, script string
-		goal         float64
-		do           func(ctx context.Context, client, n int) error
-	}{
-		{"saves", saving, 0.45, saver(s, frozen)},
-		{"lists", listing, 0.20, func(ctx context.Context, client, n int) error {
-			_, err := s.Designs(ctx, record.Listing{})
-			return err
-		}},
-	} {
-		script := filepath.Join(dir, c.name+".sql")
-		if err := os.WriteFile(script, []byte(c.script), 0o600); err != nil {
-			return err
-		}
-		var ratios []float64
-		for range *rounds {
-			plain, err := runPgbench(ctx, pgbench, pg.DSN(), script, first.Design, frozen)
-			if err != nil {
+	return []comparison{
+		{"save: POST /designs", "pgbench", 0.45, plainSave, saves(func() func(context.Context, int) error { return pageSaver(b.service, typed) })},
+		{"save: PUT /api/v1/designs/{id}", "pgbench", 0.45, plainSave, saves(func() func(context.Context, int) error { return programSaver(b.service, b.text) })},
+		{"save: the store alone", "pgbench", 0.45, plainSave, saves(func() func(context.Context, int) error { return saver(b.store, b.frozen) })},
+		{"list: GET /designs", "pgbench", 0.20, plainList, get("/designs")},
+		{"list: GET /api/v1/designs", "pgbench", 0.20, plainList, get("/api/v1/designs?limit=50")},
+		{"list: the store alone", "pgbench", 0.20, plainList, saves(func() func(context.Context, int) error {
+			return func(ctx context.Context, _ int) error {
+				_, err := b.store.Designs(ctx, record.Listing{})
 				return err
 			}
-			ours, err := perSecond(ctx, c.do)
-			if err != nil {
-				return err
-			}
-			fmt.Printf("  pgbench %8.0f/s   store %8.0f/s   ratio %.3f\n", plain, ours, ours/plain)
-			ratios = append(ratios, ours/plain)
-		}
-		fmt.Printf("%s per second, to the same statements by pgbench: %.3f (goal: %.2f or more)\n\n", c.name, median(ratios), c.goal)
+		})},
+	}, nil
+}
+
+// visitors send the requests that wrk cannot: each rests on the answer to the one before.
+var visitors = &http.Client{
+	Transport:     &http.Transport{MaxIdleConnsPerHost: clients},
+	CheckRedirect: func(*http.Request, []*http.Request) error { return http.ErrUseLastResponse },
+}
+
+// visit sends a request, reads the whole answer, and returns its header.
+func visit(req *http.Request, status int) (http.Header, error) {
+	resp, err := visitors.Do(req)
+	if err != nil {
+		return nil, err
 	}
-	return nil
+	defer resp.Body.Close()
+	body, err := io.ReadAll(resp.Body)
+	if err == nil && resp.StatusCode != status {
+		err = fmt.Errorf("%s %s: %s: %s", req.Method, req.URL.Path, resp.Status, body)
+	}
+	return resp.Header, err
+}
+
+// pageSaver saves further revisions of a client's own design as a browser does.
+func pageSaver(service string, typed url.Values) func(ctx context.Context, client int) error {
+	body := typed.Encode()
+	type page struct {
+		design string
+		base   int
+	}
+	var last [clients]page
+	return func(ctx context.Context, client int) error {
+		l := &last[client]
+		hidden := url.Values{"request": {rand.Text()}, "design": {l.design}, "base": {strconv.Itoa(l.base)}}
+		req, err := http.NewRequestWithContext(ctx, http.MethodPost, service+"/designs", strings.NewReader(body+"&"+hidden.Encode()))
+		if err != nil {
+			return err
+		}
+		req.Header.Set("Content-Type", "application/x-www-form-urlencoded")
+		header, err := visit(req, http.StatusSeeOther)
+		if err != nil {
+			return err
+		}
+		l.base++
+		design, saved, _ := strings.Cut(strings.TrimPrefix(header.Get("Location"), "/designs/"), "?saved=")
+		if l.design = design; saved != strconv.Itoa(l.base) {
+			return fmt.Errorf("revision %d led to %q", l.base, header.Get("Location"))
+		}
+		return nil
+	}
+}
+
+// programSaver saves further revisions of a client's own design as a program does.
+func programSaver(service string, document []byte) func(ctx context.Context, client int) error {
+	type design struct{ address, tag string }
+	var last [clients]design
+	return func(ctx context.Context, client int) error {
+		l := &last[client]
+		method, address, status := http.MethodPut, l.address, http.StatusOK
+		if l.address == "" {
+			method, address, status = http.MethodPost, "/api/v1/designs", http.StatusCreated
+		}
+		req, err := http.NewRequestWithContext(ctx, method, service+address, bytes.NewReader(document))
+		if err != nil {
+			return err
+		}
+		req.Header.Set("Content-Type", "application/json")
+		req.Header.Set("Idempotency-Key", rand.Text())
+		if l.tag != "" {
+			req.Header.Set("If-Match", l.tag)
+		}
+		header, err := visit(req, status)
+		if err != nil {
+			return err
+		}
+		if l.address == "" {
+			l.address = header.Get("Location")
+		}
+		l.tag = header.Get("ETag")
+		return nil
+	}
 }
 
 // saver saves further revisions of a client's own design.
-func saver(s *store.Store, frozen record.Frozen) func(ctx context.Context, client, n int) error {
+func saver(s *store.Store, frozen record.Frozen) func(ctx context.Context, client int) error {
 	var last [clients]record.Revision
-	return func(ctx context.Context, client, n int) (err error) {
+	return func(ctx context.Context, client int) (err error) {
 		l := &last[client]
 		key := fmt.Sprintf("store %d %s %d", client, l.Design, l.Number)
 		*l, err = s.SaveRevision(ctx, loader, store.Save{Design: l.Design, Base: l.Number, Frozen: frozen, Request: key})
@@ -146,43 +197,47 @@ func saver(s *store.Store, frozen record.Frozen) func(ctx context.Context, clien
 	}
 }
 
-// perSecond does something with all clients for a while.
-func perSecond(ctx context.Context, do func(ctx context.Context, client, n int) error) (float64, error) {
+// again does something with all clients for a while.
+func again(ctx context.Context, do func(ctx context.Context, client int) error) (figures, error) {
 	began, end := time.Now(), time.Now().Add(*duration)
 	var group sync.WaitGroup
-	var counts [clients]int
+	var took [clients][]time.Duration
 	var errs [clients]error
 	for client := range clients {
 		group.Go(func() {
-			for time.Now().Before(end) && errs[client] == nil {
-				errs[client] = do(ctx, client, counts[client])
-				counts[client]++
+			for last := time.Now(); last.Before(end) && errs[client] == nil; {
+				errs[client] = do(ctx, client)
+				now := time.Now()
+				took[client] = append(took[client], now.Sub(last))
+				last = now
 			}
 		})
 	}
 	group.Wait()
-	total := 0
-	for _, n := range counts {
-		total += n
-	}
-	return float64(total) / time.Since(began).Seconds(), errors.Join(errs[:]...)
+	all := slices.Sorted(slices.Values(slices.Concat(took[:]...)))
+	return figures{
+		perSecond: float64(len(all)) / time.Since(began).Seconds(),
+		p50:       all[len(all)/2],
+		p99:       all[len(all)*99/100],
+	}, errors.Join(errs[:]...)
 }
 
 var tpsLine = regexp.MustCompile(`tps = ([0-9.]+)`)
 
 // runPgbench runs a script with all clients for a while and returns how often a
-// second it was done. Each client begins with a design of its own, a copy of the one
-// named.
-func runPgbench(ctx context.Context, pgbench, dsn, script string, like record.ID, f record.Frozen) (float64, error) {
-	conn, err := pgx.Connect(ctx, dsn)
+// second it was done. Each client begins with a design of its own, a copy of the saved
+// one.
+func (b *bench) runPgbench(ctx context.Context, script string) (none figures, err error) {
+	f := &b.frozen
+	conn, err := pgx.Connect(ctx, b.dsn)
 	if err != nil {
-		return 0, err
+		return none, err
 	}
 	defer conn.Close(context.WithoutCancel(ctx))
 	run := rand.Text()
 	tx, err := conn.Begin(ctx)
 	if err != nil {
-		return 0, err
+		return none, err
 	}
 	for _, sql := range []string{`
 		insert into design (id, title, site, revision, verdict, headroom_c, words, created_by, created_by_name, updated_by, updated_by_name)
@@ -192,12 +247,12 @@ func runPgbench(ctx context.Context, pgbench, dsn, script string, like record.ID
 		select $1 || '-' || client, 1, 0, document, result, sha256, engine, rulebook, title, site, verdict, headroom_c, note, saved_by, saved_by_name
 		from revision, generate_series(0, $3::integer - 1) as client where design = $2 and number = 1`,
 	} {
-		if _, err := tx.Exec(ctx, sql, run, like, clients); err != nil {
-			return 0, errors.Join(err, tx.Rollback(ctx))
+		if _, err := tx.Exec(ctx, sql, run, b.saved, clients); err != nil {
+			return none, errors.Join(err, tx.Rollback(ctx))
 		}
 	}
 	if err := tx.Commit(ctx); err != nil {
-		return 0, err
+		return none, err
 	}
 	bytea := func(b []byte) string { return `\x` + hex.EncodeToString(b) }
 	list := func(of func(record.Use) string) string {
@@ -227,19 +282,20 @@ func runPgbench(ctx context.Context, pgbench, dsn, script string, like record.ID
 	} {
 		args = append(args, "-D", name+"="+value)
 	}
-	out, err := exec.CommandContext(ctx, pgbench, append(args, dsn)...).CombinedOutput()
+	out, err := exec.CommandContext(ctx, b.pgbench, append(args, b.dsn)...).CombinedOutput()
 	found := tpsLine.FindSubmatch(out)
 	if err != nil || found == nil || strings.Contains(string(out), "aborted") {
-		return 0, fmt.Errorf("pgbench: %v\n%s", err, out)
+		return none, fmt.Errorf("pgbench: %v\n%s", err, out)
 	}
 	var behind int
 	err = conn.QueryRow(ctx, `
 		select count(*) from design d
 		where d.id like $1 || '-%' and d.revision <> (select max(r.number) from revision r where r.design = d.id)`, run).Scan(&behind)
 	if err != nil || behind > 0 {
-		return 0, fmt.Errorf("pgbench saved revisions that its designs do not point at: %d, %v", behind, err)
+		return none, fmt.Errorf("pgbench saved revisions that its designs do not point at: %d, %v", behind, err)
 	}
-	return strconv.ParseFloat(string(found[1]), 64)
+	rate, err := strconv.ParseFloat(string(found[1]), 64)
+	return figures{perSecond: rate}, err
 }
 
 // findPgbench finds pgbench, which Debian does not put into the path.
