@@ -113,7 +113,7 @@ func TestDatabaseAway(t *testing.T) {
 	cluster := testdb.NewCluster(t)
 	s := startService(t, cluster.DSN())
 	s.awaitReady(t, http.StatusOK)
-	example := exampleDesign(t)
+	example := usualDesign(t)
 	l := &load{t: t, service: s, example: example, form: typed(t, titled(example, "Typed")), acknowledged: keptRevisions{}}
 	end := sync.OnceFunc(func() {
 		l.stop.Store(true)
@@ -174,7 +174,7 @@ func TestDatabaseAway_AtStart(t *testing.T) {
 	cluster := testdb.NewCluster(t)
 	cluster.Stop(t)
 	s := startService(t, cluster.DSN())
-	document := titled(exampleDesign(t), "Before the database")
+	document := titled(usualDesign(t), "Before the database")
 	s.must(t, http.StatusOK, "POST", "/api/v1/size", document, "application/json")
 	s.get(t, "/design")
 	s.awaitReady(t, http.StatusServiceUnavailable)

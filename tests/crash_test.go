@@ -99,7 +99,7 @@ func (c *crash) saveOn(saver int) keptRevisions {
 func TestCrash(t *testing.T) {
 	kills := int(howMany(200, 10, 10))
 	cluster := testdb.NewCluster(t)
-	c := &crash{t: t, example: exampleDesign(t)}
+	c := &crash{t: t, example: usualDesign(t)}
 	c.now.Store(startService(t, cluster.DSN()))
 	c.now.Load().awaitReady(t, http.StatusOK)
 

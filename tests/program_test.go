@@ -223,8 +223,8 @@ func (s *service) listed(t testing.TB) map[string]int {
 	return all
 }
 
-// exampleDesign is a design as people save it, of some size.
-func exampleDesign(t testing.TB) object {
+// usualDesign is a design as people save it, of some size.
+func usualDesign(t testing.TB) object {
 	t.Helper()
 	text, err := os.ReadFile("testdata/example.json")
 	if err != nil {

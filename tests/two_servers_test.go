@@ -60,7 +60,7 @@ func mustSubmit(t *testing.T, s *service, status int, path string, document []by
 func TestTwoServices(t *testing.T) {
 	t.Parallel()
 	a, b := twoServices(t)
-	example := exampleDesign(t)
+	example := usualDesign(t)
 	first, second := titled(example, "Two services"), titled(example, "Two services, changed at the other")
 
 	design, made := mustSave(t, a, "", "", "first", first)
@@ -142,7 +142,7 @@ func TestTwoServices(t *testing.T) {
 func TestTwoServices_AtOnce(t *testing.T) {
 	t.Parallel()
 	a, b := twoServices(t)
-	example := exampleDesign(t)
+	example := usualDesign(t)
 	atOnce := func(send func(s *service, name string) (answer, error)) (answers [2]answer) {
 		var group sync.WaitGroup
 		for i, s := range []*service{a, b} {
