@@ -91,8 +91,8 @@ func (s *Server) showRevision(w http.ResponseWriter, r *http.Request, saved Savi
 		// A later edition of the format may refuse what an earlier one took.
 		p.Engine = views.Recheck{
 			Heading: "It cannot be sized again",
-			Words:  fmt.Sprintf("The reader of today refuses what was saved then, so that it cannot be sized again. The verdict then was %s.", rev.Frozen.Verdict),
-			SHA256: hex.EncodeToString(rev.Frozen.SHA256[:]),
+			Words:   fmt.Sprintf("The reader of today refuses what was saved then, so that it cannot be sized again. The verdict then was %s.", rev.Frozen.Verdict),
+			SHA256:  hex.EncodeToString(rev.Frozen.SHA256[:]),
 		}
 		var why []string
 		for _, fault := range read.Faults {

@@ -269,6 +269,9 @@ func TestFile_ThereAndBack(t *testing.T) {
 			saved := w.Body.String()
 			back := read(t, open(t, s, "saved.json", saved), tc.status).fields("design")
 			for name := range sent {
+				if !strings.HasPrefix(name, "/") { // a field of the page, such as its request key, and none of the document
+					continue
+				}
 				if got, want := back.Get(name), sent.Get(name); got != want && !strings.HasSuffix(name, "/unit") {
 					t.Errorf("%s was %q and comes back as %q", name, want, got)
 				}
