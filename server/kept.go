@@ -40,16 +40,21 @@ func (s *Server) keptNow(ctx context.Context) (keptEquipment, error) {
 	}
 	ctx, cancel := context.WithTimeout(ctx, patience)
 	defer cancel()
+	names, err := saved.EquipmentNames(ctx, mostOffered+1)
+	if err != nil {
+		return keptEquipment{}, err
+	}
 	var kept keptEquipment
-	for kind, list := range map[record.Kind]*[]pieceChoice{record.KindModule: &kept.modules, record.KindInverter: &kept.inverters} {
-		page, err := saved.EquipmentList(ctx, record.EquipmentListing{Kind: kind, Limit: mostOffered})
-		if err != nil {
-			return keptEquipment{}, err
+	for _, n := range names {
+		list := &kept.modules
+		if n.Kind == record.KindInverter {
+			list = &kept.inverters
 		}
-		kept.more = kept.more || page.Next != ""
-		for _, e := range page.Equipment {
-			*list = append(*list, pieceChoice{e.ID, pieceName(e.Maker, e.Model)})
+		if len(*list) == mostOffered {
+			kept.more = true
+			continue
 		}
+		*list = append(*list, pieceChoice{n.ID, pieceName(n.Maker, n.Model)})
 	}
 	return kept, nil
 }

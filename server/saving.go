@@ -45,6 +45,7 @@ type savedEquipment interface {
 	SaveEquipment(ctx context.Context, actor record.Actor, e record.Equipment, request string) (record.Equipment, error)
 	Equipment(ctx context.Context, id record.ID) (record.Equipment, error)
 	EquipmentList(ctx context.Context, ask record.EquipmentListing) (record.EquipmentPage, error)
+	EquipmentNames(ctx context.Context, limit int) ([]record.EquipmentName, error)
 	ArchiveEquipment(ctx context.Context, actor record.Actor, id record.ID) error
 	RestoreEquipment(ctx context.Context, actor record.Actor, id record.ID) error
 	WhereUsed(ctx context.Context, kind record.Kind, maker, model string, limit int) ([]record.Design, error)

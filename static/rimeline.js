@@ -139,10 +139,10 @@
 		if (ofDesign(e)) isStale("The service does not answer. What stands below is from before your last change; what you typed is kept in this browser.");
 	});
 	document.addEventListener("input", (e) => {
+		twins();
 		if (!e.target.closest("#design")) return;
 		clearTimeout(late);
 		late = setTimeout(isStale, 600, "The answer is being renewed: what stands below is from before your last change.");
-		twins();
 		planeNames();
 	});
 

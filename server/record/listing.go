@@ -79,6 +79,14 @@ type EquipmentPage struct {
 	More      bool
 }
 
+// EquipmentName is a module or an inverter as it is offered to be chosen.
+type EquipmentName struct {
+	ID    ID
+	Kind  Kind
+	Maker string
+	Model string
+}
+
 // Answer is what an HTTP request was answered, kept so that a repetition of the
 // request is answered the same.
 type Answer struct {

@@ -39,6 +39,7 @@ func everyCall(s *store.Store, f record.Frozen) map[string]func(context.Context)
 			_, err := s.WhereUsed(ctx, record.KindModule, "a", "b", 1)
 			return err
 		},
+		"EquipmentNames":   func(ctx context.Context) error { _, err := s.EquipmentNames(ctx, 1); return err },
 		"UseCounts":        func(ctx context.Context) error { _, err := s.UseCounts(ctx, nil); return err },
 		"SaveDraft":        func(ctx context.Context) error { _, err := s.SaveDraft(ctx, ann, record.Draft{}); return err },
 		"Draft":            func(ctx context.Context) error { _, err := s.Draft(ctx, "a"); return err },

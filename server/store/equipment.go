@@ -100,6 +100,22 @@ func (s *Store) Equipment(ctx context.Context, id record.ID) (e record.Equipment
 	return e, err
 }
 
+// EquipmentNames returns the equipment in use by its names: up to limit modules and up
+// to limit inverters, each by maker and then by model.
+func (s *Store) EquipmentNames(ctx context.Context, limit int) (names []record.EquipmentName, err error) {
+	defer wrap(&err, "names of equipment")
+	const ofKind = `(
+		select id, kind, maker, model from equipment
+		where kind = '%s' and archived_at is null
+		order by equipment.maker, equipment.model, equipment.id limit $1)`
+	sql := fmt.Sprintf(ofKind, record.KindModule) + ` union all ` + fmt.Sprintf(ofKind, record.KindInverter)
+	err = s.read(ctx, func(ctx context.Context, conn *pgx.Conn) (err error) {
+		names, err = all(ctx, conn, pgx.RowToStructByPos[record.EquipmentName], sql, max(limit, 0))
+		return err
+	})
+	return names, err
+}
+
 // ArchiveEquipment takes equipment out of the list of what is in use. Designs that
 // carry a copy keep it. Archiving what is archived changes nothing.
 func (s *Store) ArchiveEquipment(ctx context.Context, actor record.Actor, id record.ID) (err error) {

@@ -168,6 +168,26 @@ func TestEquipmentList(t *testing.T) {
 			t.Errorf("%s: %v, total %d, mismatch (-want +got)\n%s", c.name, err, page.Total, diff)
 		}
 	}
+	names := func(limit int) (of []string) {
+		t.Helper()
+		found, err := s.EquipmentNames(t.Context(), limit)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, n := range found {
+			if e, err := s.Equipment(t.Context(), n.ID); err != nil || (record.EquipmentName{ID: e.ID, Kind: e.Kind, Maker: e.Maker, Model: e.Model}) != n {
+				t.Errorf("%+v is the name of %+v, %v", n, e, err)
+			}
+			of = append(of, n.Model)
+		}
+		return of
+	}
+	if diff := cmp.Diff([]string{"M-2", "M-10", "M 9", "M 10", "QP-12K"}, names(99)); diff != "" {
+		t.Errorf("names (-want +got)\n%s", diff)
+	}
+	if diff := cmp.Diff([]string{"M-2", "QP-12K"}, names(1)); diff != "" {
+		t.Errorf("one name of each kind (-want +got)\n%s", diff)
+	}
 	if err := s.RestoreEquipment(t.Context(), ann, archived.ID); err != nil {
 		t.Fatal(err)
 	}
