@@ -54,7 +54,6 @@ type EquipmentPage struct {
 	Copied   string // what it is a copy of, and what to look up; "" if of nothing
 	Archived *Action
 	Hidden   []HiddenField
-	Lead     string
 	Parts    []EquipmentPart
 	Note     Field
 	Keep     string // words of the button
