@@ -264,7 +264,7 @@ func newBase(title, here string) views.Base {
 		Title:   title,
 		Here:    here,
 		Styles:  []string{static.URL("rimeline.css"), static.URL("answer.css")},
-		Scripts: []string{static.URL("htmx.js"), static.URL("rimeline.js")},
+		Scripts: []string{static.URL("htmx.js"), static.URL("rimeline.js"), static.URL("kept.js")},
 		Icon:    static.URL("icon.svg"),
 	}
 }

@@ -44,7 +44,6 @@ func newDesignPage(base views.Base, j judged, m marking) views.DesignPage {
 	b := newPageBuilder(j, m)
 	base.Wide = true
 	base.Styles = append(base.Styles, static.URL("saved.css"))
-	base.Scripts = append(base.Scripts, static.URL("kept.js"))
 	p := views.DesignPage{
 		Base:     base,
 		Title:    b.field("", titleInquiry),

@@ -37,7 +37,7 @@ var designSorts = []struct {
 	{"Least headroom", "headroom num", record.SortHeadroom, false},
 	{"Revision", "revision num", "", false},
 	{"Changed", "age", record.SortUpdated, true},
-	{"", "acts", "", false},
+	{"Actions", "acts", "", false},
 }
 
 // listBase is what lists have around them: they need neither htmx nor the styles of
@@ -195,7 +195,7 @@ func countOf(n int, more bool, what string) string {
 func designColumns(l record.Listing) []views.Column {
 	var columns []views.Column
 	for _, c := range designSorts {
-		column := views.Column{Words: c.words, Class: c.class}
+		column := views.Column{Words: c.words, Class: c.class, Unseen: c.class == "acts"}
 		if c.sort != "" {
 			by := l
 			by.Sort, by.Cursor, by.Reversed = c.sort, "", false

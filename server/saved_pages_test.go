@@ -394,7 +394,7 @@ func TestDrafts(t *testing.T) {
 	}
 	p := get(t, s, "/drafts/"+string(d.ID), http.StatusOK)
 	p.sound()
-	p.says("A draft, kept just now by someone at this service.", "Saved as a draft at")
+	p.says("A draft, kept by someone at this service.", "Saved as a draft at")
 	got := p.fields("design")
 	for _, name := range []string{"/title", "/modules/0/voc_v", "/site/coldest_c/value", "/planes/0/positions", "note", "draft", "draft-version", "/site/name"} {
 		if got.Get(name) != v.Get(name) {

@@ -84,6 +84,11 @@
 		wait = 0;
 		$("away")?.remove();
 		$("save").hidden = false;
+		document.querySelectorAll(".whence[data-discards]").forEach((f) => {
+			f.action = `/drafts/${kept.dataset.draft}/discard`;
+			f.dataset.discards = kept.dataset.draft;
+			f.elements.version.value = kept.dataset.version;
+		});
 		const here = "/drafts/" + kept.dataset.draft;
 		if (location.pathname !== here) history.replaceState(history.state, "", here); // a reload then brings it back
 	};
@@ -142,8 +147,8 @@
 		write();
 		if (!autosaves || leaving || !typed || !form()) return;
 		if (!busy && !unanswered) return send();
-		const last = body(); // behind what is on its way, which makes the next version
-		last.set("draft-version", Number(last.get("draft-version")) + 1);
+		const last = body();
+		if (busy) last.set("draft-version", Number(last.get("draft-version")) + 1); // what is on its way makes the next one
 		post(last).catch(() => {});
 	});
 	addEventListener("pageshow", () => { leaving = false; });
@@ -208,12 +213,13 @@
 	// A reload brings back what this tab had; a fresh form offers what was typed before,
 	// and the page of a design what is in this browser alone.
 	const begin = () => {
+		const gone = sessionStorage.getItem(goesOn);
+		sessionStorage.removeItem(goesOn);
 		if (!form()) return;
 		if (autosaves && $("keep-draft")) $("keep-draft").hidden = true;
 		const fresh = form().hasAttribute("data-fresh");
 		const again = ["reload", "back_forward"].includes(performance.getEntriesByType("navigation")[0]?.type);
-		const continued = sessionStorage.getItem(goesOn) && !fresh;
-		sessionStorage.removeItem(goesOn);
+		const continued = gone && !fresh;
 		const arrived = $("origin").dataset;
 		if (continued && arrived.done === "saved") {
 			forget((c) => c.id === sessionStorage.getItem(tab));

@@ -91,21 +91,24 @@ func needBrowser(t *testing.T) context.Context {
 	if err != nil {
 		t.Fatal(err)
 	}
-	chrome.start.Do(func() {
-		options := append(chromedp.DefaultExecAllocatorOptions[:],
-			chromedp.ExecPath(exe), chromedp.NoSandbox, chromedp.DisableGPU,
-			chromedp.Flag("disable-quic", true),
-			chromedp.Flag("disable-component-update", true),
-			chromedp.Flag("force-device-scale-factor", "1"))
-		allocator, endAllocator := chromedp.NewExecAllocator(context.Background(), options...)
-		ctx, endBrowser := chromedp.NewContext(allocator)
-		chrome.ctx, chrome.cancel = ctx, func() { endBrowser(); endAllocator() }
-		chrome.err = chromedp.Do(ctx) // starts it
-	})
+	chrome.start.Do(func() { chrome.ctx, chrome.cancel, chrome.err = startBrowser(exe) })
 	if chrome.err != nil {
 		t.Fatalf("start %s: %v", exe, chrome.err)
 	}
 	return chrome.ctx
+}
+
+// startBrowser starts a browser of its own. Its context ends with cancel.
+func startBrowser(exe string, more ...chromedp.ExecAllocatorOption) (ctx context.Context, cancel func(), err error) {
+	options := append(chromedp.DefaultExecAllocatorOptions[:],
+		chromedp.ExecPath(exe), chromedp.NoSandbox, chromedp.DisableGPU,
+		chromedp.Flag("disable-quic", true),
+		chromedp.Flag("disable-component-update", true),
+		chromedp.Flag("force-device-scale-factor", "1"))
+	allocator, endAllocator := chromedp.NewExecAllocator(context.Background(), append(options, more...)...)
+	ctx, endBrowser := chromedp.NewContext(allocator)
+	err = chromedp.Do(ctx) // starts it
+	return ctx, func() { endBrowser(); endAllocator() }, err
 }
 
 // startSite serves the site on a free port of this machine until the test ends and
@@ -132,6 +135,7 @@ func startSite(t *testing.T) string {
 type tab struct {
 	t      *testing.T
 	ctx    context.Context
+	close  func()
 	site   string
 	script bool
 
@@ -144,9 +148,15 @@ type tab struct {
 // openTab opens an empty tab for the site. With script false the pages run none.
 func openTab(t *testing.T, site string, size viewport, script bool) *tab {
 	t.Helper()
-	ctx, cancel := chromedp.NewContext(needBrowser(t))
+	return openTabOf(t, needBrowser(t), site, size, script)
+}
+
+// openTabOf opens an empty tab of a browser.
+func openTabOf(t *testing.T, browser context.Context, site string, size viewport, script bool) *tab {
+	t.Helper()
+	ctx, cancel := chromedp.NewContext(browser)
 	t.Cleanup(cancel)
-	b := &tab{t: t, ctx: ctx, site: site, script: script}
+	b := &tab{t: t, ctx: ctx, close: cancel, site: site, script: script}
 	if err := errors.Join(chromedp.Do(ctx), chromedp.Listen(ctx, b.observe)); err != nil { // the first Do must have no time limit
 		t.Fatal(err)
 	}

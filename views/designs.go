@@ -35,6 +35,7 @@ type Column struct {
 	Class  string
 	Href   string // sorts by it; "" where the list cannot
 	Sorted string // "ascending", "descending"; "" if the list is not sorted by it
+	Unseen bool   // the words are for who cannot see the column
 }
 
 // DesignRow is a saved design in a list.
