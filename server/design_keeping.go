@@ -15,17 +15,12 @@ import (
 // of use without.
 const patience = 500 * time.Millisecond
 
-// keeping is what the page of a form says of where it is kept.
-func (s *Server) keeping(r *http.Request, o origin) views.Keeping {
-	ctx, cancel := context.WithTimeout(r.Context(), patience)
-	defer cancel()
-	err := s.savingWorks(ctx)
-	if err != nil && !errors.Is(err, record.ErrUnavailable) {
-		s.log.WarnContext(r.Context(), "saving does not work", "request_id", visitOf(r).requestID, "error", err)
-	}
+// keeping is what the page of a form says of where it is kept. away is why nothing can
+// be saved at the moment, nil if it can.
+func keeping(o origin, away error) views.Keeping {
 	k := views.Keeping{
 		Origin: o.fields(), Note: o.note,
-		Autosave: !errors.Is(err, ErrNothingSaved), Away: away(err),
+		Autosave: !errors.Is(away, ErrNothingSaved), Away: awayWords(away),
 	}
 	if o.design != "" {
 		k.Saved = &views.SavedAs{Design: string(o.design), Says: fmt.Sprintf("Made from revision %d. ", o.base)}
@@ -33,8 +28,8 @@ func (s *Server) keeping(r *http.Request, o origin) views.Keeping {
 	return k
 }
 
-// away says in sentences why nothing can be saved and what to do, "" if it can.
-func away(err error) string {
+// awayWords says in sentences why nothing can be saved and what to do, "" if it can.
+func awayWords(err error) string {
 	switch {
 	case err == nil:
 		return ""
@@ -50,10 +45,20 @@ func away(err error) string {
 
 // designPage is the page of a form with what it says of where it is kept.
 func (s *Server) designPage(r *http.Request, base views.Base, j judged, m marking, o origin) views.DesignPage {
-	p := newDesignPage(base, j, m)
-	p.Keeping = s.keeping(r, o)
-	if p.Keeping.Away == "" {
-		s.offerKept(r, &p)
+	ctx, cancel := context.WithTimeout(r.Context(), patience)
+	defer cancel()
+	err := s.savingWorks(ctx)
+	if err != nil && !errors.Is(err, record.ErrUnavailable) {
+		s.log.WarnContext(r.Context(), "saving does not work", "request_id", visitOf(r).requestID, "error", err)
 	}
+	p := newDesignPage(base, j, m)
+	p.Keeping = keeping(o, err)
+	return p
+}
+
+// keptPage is the same for a form that the database has just given or taken.
+func keptPage(base views.Base, j judged, m marking, o origin) views.DesignPage {
+	p := newDesignPage(base, j, m)
+	p.Keeping = keeping(o, nil)
 	return p
 }

@@ -72,10 +72,7 @@ func (s *Server) showUnsaved(w http.ResponseWriter, r *http.Request, j judged, o
 	if failure == nil {
 		return cause
 	}
-	refused := &views.Refusal{Heading: "Not saved", Lead: failure.message}
-	if failure.heading != "" {
-		refused.Heading = failure.heading
-	}
+	refused := &views.Refusal{Heading: notSavedHeading(cause), Lead: failure.message}
 	if !errors.Is(cause, ErrNothingSaved) && failure.status == http.StatusServiceUnavailable {
 		refused.Lead += " Everything that you typed stands below."
 	}
@@ -83,8 +80,8 @@ func (s *Server) showUnsaved(w http.ResponseWriter, r *http.Request, j judged, o
 		w.Header().Set(name, value)
 	}
 	s.log.WarnContext(r.Context(), "design not saved", "request_id", visitOf(r).requestID, "status", failure.status, "error", cause)
-	base := newBase("Not saved: "+titled("Design", j.form), "/design")
-	p := s.designPage(r, base, j, marking{}, o)
+	p := newDesignPage(newBase("Not saved: "+titled("Design", j.form), "/design"), j, marking{})
+	p.Keeping = keeping(o, cause)
 	p.Keeping.Refused = refused
 	if p.Keeping.Autosave {
 		p.Keeping.Away = "" // Save is what to press next
@@ -92,22 +89,36 @@ func (s *Server) showUnsaved(w http.ResponseWriter, r *http.Request, j judged, o
 	return s.render(w, r, failure.status, views.Design(p))
 }
 
+func notSavedHeading(cause error) string {
+	switch {
+	case errors.Is(cause, record.ErrUnknownOutcome):
+		return "It is not known whether it was saved"
+	case errors.Is(cause, ErrStarting):
+		return "Not saved: saving is still starting"
+	case errors.Is(cause, ErrNothingSaved):
+		return "Not saved: nothing is saved here"
+	case errors.Is(cause, record.ErrUnavailable):
+		return "Not saved: the database does not answer"
+	}
+	return "Not saved"
+}
+
 // showFaulty shows every fault of a form that was to be saved, and keeps its text as
 // a draft.
 func (s *Server) showFaulty(w http.ResponseWriter, r *http.Request, saved Saving, j judged, o origin) error {
-	further := "It cannot be saved as a revision before it can be sized. "
-	kept, err := s.keep(r, saved, o, typedFields(r.PostForm))
-	if err != nil {
-		further += "Its text could not be kept as a draft either: " + away(err)
-	} else {
-		o.draft, o.version = kept.ID, kept.Version
-		further += "Its text is kept as a draft."
-	}
+	lead := "It cannot be saved as a revision before it can be sized. "
 	base := newBase("Please correct: "+titled("Design", j.form), "/design")
-	p := s.designPage(r, base, j, marking{faults: true}, o)
-	p.Faults.Lead = further
+	kept, err := s.keep(r, saved, o, typedFields(r.PostForm))
 	if err == nil {
-		p.Keeping.Draft, p.Keeping.Done = s.draftNow(kept.Draft, 0), "kept"
+		o.draft, o.version = kept.ID, kept.Version
+		lead += "Its text is kept as a draft. " + kept.second
+	} else {
+		lead += "Its text could not be kept as a draft either: " + awayWords(err)
+	}
+	p := newDesignPage(base, j, marking{faults: true})
+	p.Keeping, p.Faults.Lead = keeping(o, err), lead
+	if err == nil {
+		p.Keeping.Draft, p.Keeping.Done = draftNow(kept.Draft, 0), "kept"
 	}
 	return s.render(w, r, http.StatusUnprocessableEntity, views.Design(p))
 }
@@ -134,7 +145,7 @@ func (s *Server) showConflict(w http.ResponseWriter, r *http.Request, saved Savi
 	}
 	kept, err := s.keep(r, saved, o, typedFields(r.PostForm))
 	if err != nil {
-		p.Kept = "Theirs is saved. Yours could not be kept as a draft, so it is in this page alone: " + away(err)
+		p.Kept = "Theirs is saved. Yours could not be kept as a draft, so it is in this page alone: " + awayWords(err)
 	} else {
 		o.draft, o.version = kept.ID, kept.Version
 	}

@@ -130,8 +130,8 @@ func (s *Server) showDraft(w http.ResponseWriter, r *http.Request, saved Saving)
 		newest = of.Revision
 	}
 	base := newBase(titled("Draft", f), "/designs")
-	p := s.designPage(r, base, judge(f), marking{}, o)
-	p.Keeping.Draft = s.draftNow(d, newest)
+	p := keptPage(base, judge(f), marking{}, o)
+	p.Keeping.Draft = draftNow(d, newest)
 	if r.URL.Query().Has("kept") {
 		p.Keeping.Done = "kept"
 	}
@@ -146,7 +146,7 @@ func (s *Server) showDraft(w http.ResponseWriter, r *http.Request, saved Saving)
 
 // draftNow tells of a draft that a form holds. newest is the newest revision of its
 // design, 0 if that is not known or there is none.
-func (s *Server) draftNow(d record.Draft, newest int) *views.DraftNow {
+func draftNow(d record.Draft, newest int) *views.DraftNow {
 	now := &views.DraftNow{
 		ID: string(d.ID), Version: version(d), Kept: moment(d.Saved.At, time.Now()), By: d.Saved.By.Name,
 	}

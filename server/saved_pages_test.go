@@ -284,9 +284,9 @@ func TestSave_Away(t *testing.T) {
 		button           bool
 		retryAfter       string
 	}{
-		{ErrStarting, "Saving is still starting.", "Saving is still starting", "Sizing works already", true, "1"},
-		{ErrNothingSaved, "Designs are not saved here", "Nothing is saved here", "keep a design as a file", false, "60"},
-		{record.ErrUnavailable, "The database does not answer", "What is saved cannot be reached", "Everything that you typed stands below", true, "5"},
+		{ErrStarting, "Saving is still starting.", "Not saved: saving is still starting", "Sizing works already", true, "1"},
+		{ErrNothingSaved, "Designs are not saved here", "Not saved: nothing is saved here", "keep a design as a file", false, "60"},
+		{record.ErrUnavailable, "The database does not answer", "Not saved: the database does not answer", "Everything that you typed stands below", true, "5"},
 	} {
 		t.Run(tc.err.Error(), func(t *testing.T) {
 			away := tc.err
