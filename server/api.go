@@ -7,6 +7,7 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+	"sync"
 
 	"rimeline/sizing"
 	"rimeline/sizing/design"
@@ -18,13 +19,24 @@ func (s *Server) apiSize(w http.ResponseWriter, r *http.Request) error {
 	if err != nil {
 		return err
 	}
-	body := append(sizing.Size(d).AppendJSON(nil), '\n')
+	buf := results.Get().(*[]byte)
+	body := append(sizing.Size(d).AppendJSON((*buf)[:0]), '\n')
 	w.Header().Set("Content-Type", "application/json")
 	w.Header().Set("Cache-Control", "no-store")
 	w.Header().Set("Content-Length", strconv.Itoa(len(body)))
 	_, _ = w.Write(body)
+	if cap(body) <= largestKeptResult {
+		*buf = body
+		results.Put(buf)
+	}
 	return nil
 }
+
+// results are buffers that results were written into, for the next ones; one that
+// grew large for a large design is let go.
+var results = sync.Pool{New: func() any { return new(make([]byte, 0, 64<<10)) }}
+
+const largestKeptResult = 1 << 20
 
 // postedDesign reads the design that a request carries.
 func postedDesign(r *http.Request) (*design.Design, error) {

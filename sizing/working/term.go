@@ -52,7 +52,8 @@ type Term struct {
 type label struct {
 	symbol, unit string
 	input        *Input
-	step         *Step // memo of a named result's line
+	step         *Step  // memo of a named result's line
+	number       string // memo of the value as a sum shows it, without its sign
 }
 
 // Value returns the term's value.
@@ -224,11 +225,13 @@ func (t *Term) bindsInExpression() int { return t.op.binds() }
 
 func (t *Term) appendNumbers(dst []byte) []byte {
 	switch t.op {
-	case opNumber, opInput:
+	case opNumber:
 		return appendValue(dst, t.value)
+	case opInput:
+		return t.appendKept(dst)
 	case opNamed:
 		if t.printsAsValue() {
-			return appendValue(dst, t.value)
+			return t.appendKept(dst)
 		}
 		return t.a.appendNumbers(dst)
 	}
@@ -281,22 +284,33 @@ func appendOperand(dst []byte, t *Term, appendTerm func(*Term, []byte) []byte, b
 	return append(appendTerm(t, dst), ')')
 }
 
-// appendValue appends a number for a sum: a true minus, and parentheses around a
-// negative number unless it stands first in the line.
+// appendKept appends the value of a term that many lines show.
+func (t *Term) appendKept(dst []byte) []byte {
+	if t.label.number == "" {
+		var buf [48]byte
+		t.label.number = t.sheet.keep(t.value.Abs().AppendJSON(buf[:0]))
+	}
+	return appendSigned(dst, t.value.Sign() < 0, t.label.number)
+}
+
+// appendValue appends a number for a sum.
 func appendValue(dst []byte, x quantity.Exact) []byte {
 	if x.Sign() >= 0 {
 		return x.AppendJSON(dst)
 	}
-	bracket := len(dst) > 0
-	if bracket {
-		dst = append(dst, '(')
+	return appendSigned(dst, true, x.Neg().String())
+}
+
+// appendSigned appends a number with a true minus, and parentheses around a negative
+// one unless it stands first in the line.
+func appendSigned(dst []byte, negative bool, number string) []byte {
+	if !negative {
+		return append(dst, number...)
 	}
-	dst = append(dst, "−"...)
-	dst = x.Neg().AppendJSON(dst)
-	if bracket {
-		dst = append(dst, ')')
+	if len(dst) == 0 {
+		return append(append(dst, "−"...), number...)
 	}
-	return dst
+	return append(append(append(dst, "(−"...), number...), ')')
 }
 
 // IsNamed reports whether the term is a named result, which has a step.

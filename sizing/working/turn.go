@@ -15,6 +15,8 @@ type Condition struct {
 	solved      bool
 	roots       []root
 	bits        uint64 // of the inputs of the roots, once asked for
+	flipped     bool   // a sweep has passed an odd number of its roots
+	seen        *Input // whose events it was last looked at for
 	sheet       *Sheet
 }
 
@@ -295,7 +297,7 @@ func Judge(rules []Rule) (Verdict, []Reason) {
 	worst := Within
 	var reasons []Reason
 	for _, r := range rules {
-		if !r.holds(nil) {
+		if !r.holds() {
 			continue
 		}
 		worst = max(worst, r.Verdict)
@@ -306,29 +308,20 @@ func Judge(rules []Rule) (Verdict, []Reason) {
 	return worst, reasons
 }
 
-// holds reports whether the rule holds with some conditions flipped.
-func (r *Rule) holds(flipped []*Condition) bool {
+// holds reports whether the rule holds, with the conditions that a sweep has flipped.
+func (r *Rule) holds() bool {
 	for _, c := range r.Broken {
-		if c == nil {
-			continue
-		}
-		state := c.broken
-		for _, f := range flipped {
-			if f == c {
-				state = !state
-			}
-		}
-		if !state {
+		if c != nil && c.broken == c.flipped {
 			return false
 		}
 	}
 	return true
 }
 
-func verdictWith(rules []Rule, flipped []*Condition) Verdict {
+func verdictOf(rules []Rule) Verdict {
 	worst := Within
 	for i := range rules {
-		if rules[i].Verdict > worst && rules[i].holds(flipped) {
+		if rules[i].Verdict > worst && rules[i].holds() {
 			worst = rules[i].Verdict
 		}
 	}
@@ -347,7 +340,7 @@ type event struct {
 func Turns(rules []Rule) []Turn {
 	var seen [24]*Input
 	inputs := seen[:0]
-	now := verdictWith(rules, nil)
+	now := verdictOf(rules)
 	var found [16]Turn
 	turns := found[:0]
 	for i := range rules {
@@ -392,9 +385,10 @@ func nearestTurn(rules []Rule, in *Input, now Verdict) (at quantity.Exact, to Ve
 				continue
 			}
 			c.solve()
-			if !c.mayTurnBy(in) || containsCondition(above, c) || containsCondition(below, c) {
+			if c.seen == in || !c.mayTurnBy(in) {
 				continue
 			}
+			c.seen = in
 			for _, r := range c.roots {
 				if r.input != in {
 					continue
@@ -405,6 +399,13 @@ func nearestTurn(rules []Rule, in *Input, now Verdict) (at quantity.Exact, to Ve
 				} else {
 					below = insert(below, event{in.reached(r, false), c}, -1)
 				}
+			}
+		}
+	}
+	for i := range rules { // another check may share the conditions
+		for _, c := range rules[i].Broken {
+			if c != nil {
+				c.seen = nil
 			}
 		}
 	}
@@ -426,10 +427,6 @@ func insert(events []event, e event, side int) []event {
 	return events
 }
 
-func containsCondition(events []event, c *Condition) bool {
-	return slices.ContainsFunc(events, func(e event) bool { return e.condition == c })
-}
-
 // reached returns the value at which going away from now passes the root: for a
 // whole number the first one on the other side.
 func (in *Input) reached(r root, up bool) quantity.Exact {
@@ -447,24 +444,23 @@ func (in *Input) reached(r root, up bool) quantity.Exact {
 	return r.at.Ceil().Sub(quantity.Int(1))
 }
 
-// sweep passes the events, which are ordered outwards, and returns the first value at which
-// the verdict is another, and which; the verdict now where there is none.
-func sweep(rules []Rule, in *Input, events []event, now Verdict) (quantity.Exact, Verdict) {
-	var buf [12]*Condition
-	flipped := buf[:0]
-	for i, e := range events {
-		if !in.permits(e.at) {
-			return quantity.Exact{}, now
+// sweep passes the events, which are ordered outwards, and returns the first value at
+// which the verdict is another, and which; the verdict now where there is none.
+func sweep(rules []Rule, in *Input, events []event, now Verdict) (at quantity.Exact, to Verdict) {
+	to = now
+	passed := 0
+	for to == now && passed < len(events) && in.permits(events[passed].at) {
+		at = events[passed].at
+		for passed < len(events) && events[passed].at.Equal(at) {
+			events[passed].condition.flipped = !events[passed].condition.flipped
+			passed++
 		}
-		flipped = append(flipped, e.condition)
-		if i+1 < len(events) && events[i+1].at.Equal(e.at) {
-			continue
-		}
-		if to := verdictWith(rules, flipped); to != now {
-			return e.at, to
-		}
+		to = verdictOf(rules)
 	}
-	return quantity.Exact{}, now
+	for _, e := range events[:passed] {
+		e.condition.flipped = false
+	}
+	return at, to
 }
 
 func (in *Input) permits(x quantity.Exact) bool {
