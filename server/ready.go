@@ -18,7 +18,7 @@ func (s *Server) ready(w http.ResponseWriter, r *http.Request) error {
 	h := w.Header()
 	h.Set("Content-Type", "text/plain; charset=utf-8")
 	h.Set("Cache-Control", "no-store")
-	err := s.savingWorks(r.Context())
+	err := s.askSaving(r.Context())
 	if err == nil {
 		_, _ = w.Write([]byte("ready\n"))
 		return nil
@@ -39,8 +39,27 @@ func (s *Server) ready(w http.ResponseWriter, r *http.Request) error {
 	return nil
 }
 
-// savingWorks returns why saving does not work, nil if it does.
+// savingWorks returns why saving does not work, nil if it does or did a moment ago:
+// pages ask it each time they are shown, and a save finds out for itself.
 func (s *Server) savingWorks(ctx context.Context) error {
+	now := time.Now().UnixNano()
+	if worked := s.savingWorkedAt.Load(); 0 < worked && worked <= now && now-worked < int64(worksFor) {
+		return nil
+	}
+	err := s.askSaving(ctx)
+	if err == nil {
+		s.savingWorkedAt.Store(now)
+	} else {
+		s.savingWorkedAt.Store(0)
+	}
+	return err
+}
+
+// worksFor is how long an answer that saving works is taken for the next pages' too.
+const worksFor = 200 * time.Millisecond
+
+// askSaving returns why saving does not work, nil if it does, asked now.
+func (s *Server) askSaving(ctx context.Context) error {
 	saved, err := s.saving()
 	if err != nil {
 		return err

@@ -14,6 +14,7 @@ import (
 	"net"
 	"net/http"
 	"sync"
+	"sync/atomic"
 	"time"
 )
 
@@ -72,6 +73,8 @@ type Server struct {
 	router http.Handler
 
 	underWay sync.Map // keys of the requests at work that are to be done once
+
+	savingWorkedAt atomic.Int64 // when saving last said that it works, in Unix nanoseconds; 0 while it does not
 }
 
 // New makes the server that cfg describes.

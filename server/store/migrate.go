@@ -8,6 +8,7 @@ import (
 	"fmt"
 	"io/fs"
 	"strings"
+	"sync"
 
 	"github.com/jackc/pgx/v5"
 	"github.com/jackc/pgx/v5/pgconn"
@@ -41,7 +42,7 @@ func (s *Store) Ready(ctx context.Context) (err error) {
 	defer wrap(&err, "ready")
 	ctx, cancel := context.WithTimeout(ctx, connectTimeout)
 	defer cancel()
-	steps, err := readMigrations(migrations.FS)
+	steps, err := shippedMigrations()
 	if err != nil {
 		return err
 	}
@@ -167,6 +168,10 @@ func pending(steps, applied []migration) ([]migration, error) {
 	}
 	return steps[len(applied):], nil
 }
+
+// shippedMigrations returns the steps that this program carries. Pages ask whether
+// they are applied, so they are read once.
+var shippedMigrations = sync.OnceValues(func() ([]migration, error) { return readMigrations(migrations.FS) })
 
 // readMigrations reads the steps in order. They are named 0001_what.sql, without a
 // gap.
