@@ -132,9 +132,9 @@ func serve(ctx context.Context, args []string, getenv func(string) string, stdou
 	}
 	if getenv("GOGC") == "" {
 		// Little lives between requests, so at Go's default of 100 the collector
-		// would run at every tenth design. This takes a quarter off the work of each
-		// and costs some 20 MB.
-		debug.SetGCPercent(400)
+		// would run at every tenth design. This takes a quarter and more off the work
+		// of each, and costs some tens of megabytes.
+		debug.SetGCPercent(800)
 	}
 	fmt.Fprintln(out, whereItIs(listener.Addr()))
 	k.start()
