@@ -126,7 +126,7 @@ func equipmentColumns(l record.EquipmentListing) []views.Column {
 	for _, name := range names {
 		columns = append(columns, views.Column{Words: name, Class: "figure num"})
 	}
-	return append(columns, views.Column{Words: "Used in", Class: "uses"}, sorting("Changed", "age", record.SortUpdated, true), views.Column{Class: "acts"})
+	return append(columns, views.Column{Words: "Used in", Class: "uses"}, sorting("Changed", "age", record.SortUpdated, true), views.Column{Words: "Actions", Class: "acts", Unseen: true})
 }
 
 // pieceState is what the page of a piece says beside its values.
