@@ -53,12 +53,16 @@ func (s *Server) designPage(r *http.Request, base views.Base, j judged, m markin
 	}
 	p := newDesignPage(base, j, m)
 	p.Keeping = keeping(o, err)
+	if err == nil {
+		s.offerKept(r, &p)
+	}
 	return p
 }
 
 // keptPage is the same for a form that the database has just given or taken.
-func keptPage(base views.Base, j judged, m marking, o origin) views.DesignPage {
+func (s *Server) keptPage(r *http.Request, base views.Base, j judged, m marking, o origin) views.DesignPage {
 	p := newDesignPage(base, j, m)
 	p.Keeping = keeping(o, nil)
+	s.offerKept(r, &p)
 	return p
 }

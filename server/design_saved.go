@@ -46,7 +46,7 @@ func (s *Server) showSaved(w http.ResponseWriter, r *http.Request, saved Saving)
 	now := time.Now()
 	o := newOrigin()
 	o.design, o.base = id, d.Revision // on top of the newest, whichever it is filled with
-	p := keptPage(newBase(titled("Design", f), "/designs"), judge(f), marking{}, o)
+	p := s.keptPage(r, newBase(titled("Design", f), "/designs"), judge(f), marking{}, o)
 	p.Keeping.Saved = &views.SavedAs{
 		Design: string(id), Says: fmt.Sprintf("Revision %d, saved ", d.Revision),
 		Saved: moment(d.Updated.At, now), By: d.Updated.By.Name, Archived: d.ArchivedAt != nil,

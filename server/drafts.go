@@ -130,7 +130,7 @@ func (s *Server) showDraft(w http.ResponseWriter, r *http.Request, saved Saving)
 		newest = of.Revision
 	}
 	base := newBase(titled("Draft", f), "/designs")
-	p := keptPage(base, judge(f), marking{}, o)
+	p := s.keptPage(r, base, judge(f), marking{}, o)
 	p.Keeping.Draft = draftNow(d, newest)
 	if r.URL.Query().Has("kept") {
 		p.Keeping.Done = "kept"

@@ -350,6 +350,7 @@ func (s *Server) workOnPiece(w http.ResponseWriter, r *http.Request, p *piece) e
 	if err != nil {
 		return s.showUnkept(w, r, p, questions, err)
 	}
+	s.keptLately.Store(nil)
 	http.Redirect(w, r, fmt.Sprintf("/equipment/%s?kept=%d", kept.ID, kept.Version), http.StatusSeeOther)
 	return nil
 }
@@ -503,6 +504,7 @@ func (s *Server) archiveEquipment(w http.ResponseWriter, r *http.Request, saved 
 	if err := saved.ArchiveEquipment(r.Context(), actorOf(r), record.ID(id)); err != nil {
 		return err
 	}
+	s.keptLately.Store(nil)
 	return backToEquipment(w, r, "archived", id)
 }
 
@@ -512,6 +514,7 @@ func (s *Server) restoreEquipment(w http.ResponseWriter, r *http.Request, saved 
 	if err := saved.RestoreEquipment(r.Context(), actorOf(r), record.ID(id)); err != nil {
 		return err
 	}
+	s.keptLately.Store(nil)
 	return backToEquipment(w, r, "restored", id)
 }
 

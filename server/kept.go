@@ -8,6 +8,7 @@ import (
 	"fmt"
 	"net/http"
 	"net/url"
+	"time"
 
 	"rimeline/server/form"
 	"rimeline/server/record"
@@ -31,9 +32,19 @@ type pieceChoice struct {
 // its own page.
 const mostOffered = 200
 
-// keptNow returns the equipment in use, or why it cannot be had in the time that a page
-// of a design can wait. Nothing is kept where nothing is saved.
+// keptMoment is the equipment as it was a moment ago.
+type keptMoment struct {
+	kept keptEquipment
+	at   time.Time
+}
+
+// keptNow returns the equipment in use, as it is or was a moment ago, or why it cannot
+// be had in the time that a page of a design can wait.
 func (s *Server) keptNow(ctx context.Context) (keptEquipment, error) {
+	if m := s.keptLately.Load(); m != nil && time.Since(m.at) < worksFor {
+		return m.kept, nil
+	}
+	at := time.Now()
 	saved, err := s.saving()
 	if err != nil {
 		return keptEquipment{}, err
@@ -56,6 +67,7 @@ func (s *Server) keptNow(ctx context.Context) (keptEquipment, error) {
 		}
 		*list = append(*list, pieceChoice{n.ID, pieceName(n.Maker, n.Model)})
 	}
+	s.keptLately.Store(&keptMoment{kept, at})
 	return kept, nil
 }
 
@@ -245,5 +257,6 @@ func (s *Server) keepEntry(r *http.Request, f *form.Form, list, at string) (kept
 	if err != nil {
 		return keptSaid{}, err
 	}
+	s.keptLately.Store(nil)
 	return keptSaid{words: "It is kept:", link: equipmentLink(&kept, pieceName(kept.Maker, kept.Model))}, nil
 }

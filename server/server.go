@@ -74,7 +74,8 @@ type Server struct {
 
 	underWay sync.Map // keys of the requests at work that are to be done once
 
-	savingWorkedAt atomic.Int64 // when saving last said that it works, in Unix nanoseconds; 0 while it does not
+	savingWorkedAt atomic.Int64               // when saving last said that it works, in Unix nanoseconds; 0 while it does not
+	keptLately     atomic.Pointer[keptMoment] // what pages of designs offer; nil is not known
 }
 
 // New makes the server that cfg describes.
