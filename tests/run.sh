@@ -57,8 +57,8 @@ go tool staticcheck ./...
 
 status=0
 say "go test"
-go test -count=1 -timeout 15m ./... || status=1
+go test -count=1 -timeout 25m ./... || status=1
 
 say "go test -race -short"
-go test -race -short -count=1 -timeout 15m ./... || status=1
+go test -race -short -count=1 -timeout 25m ./... || status=1
 exit $status
