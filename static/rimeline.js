@@ -146,6 +146,14 @@
 		planeNames();
 	});
 
+	// ---- Lists: a row opens what it is about ----
+
+	document.addEventListener("click", (e) => {
+		const row = e.target.closest(".entries tbody tr");
+		if (!row || e.target.closest("a, button, input, label") || getSelection().toString()) return;
+		row.querySelector(".opens")?.click();
+	});
+
 	// ---- Paper ----
 
 	document.querySelectorAll("[data-print]").forEach((b) => {

@@ -408,7 +408,7 @@ func TestBrowser_TwoTabs(t *testing.T) {
 	one.retype("/title", "Draft")
 	one.waitKept(s, "Draft")
 	path := eval[string](one, "location.pathname")
-	two := openTab(t, s.address, desk, true)
+	two := openTab(t, s.address, phone, true)
 	two.open(path)
 	one.retype("/title", "Draft of tab one")
 	one.waitKept(s, "Draft of tab one")
@@ -440,7 +440,7 @@ func TestBrowser_TwoTabs(t *testing.T) {
 			t.Errorf("the page of the second tab does not say %q", want)
 		}
 	}
-	two.picture("conflict, desk")
+	two.picture("conflict, phone")
 	two.sound()
 	two.goes("#carried button.main")
 	if said := two.text(".said"); said != "Saved as revision 3." {
@@ -579,6 +579,44 @@ func openStoreConn(t *testing.T, dsn string) *pgx.Conn {
 	}
 	t.Cleanup(func() { conn.Close(context.Background()) })
 	return conn
+}
+
+// TestBrowser_CopyInTheBrowser: what could not be kept on the server is in this browser,
+// and is offered when both are back.
+func TestBrowser_CopyInTheBrowser(t *testing.T) {
+	needBrowser(t)
+	s := startSavingSite(t, testdb.New(t, migrateTables))
+	b := openTab(t, s.address, desk, true)
+	b.open("/example")
+	b.saves()
+	design := eval[string](b, "location.pathname")
+	s.end()
+	b.retype("/site/name", "Typed into the void")
+	b.wait(`document.getElementById("kept").textContent.includes("does not answer")`)
+	b.sound()
+	b.close()
+	s.start()
+
+	b = openTab(t, s.address, desk, true)
+	b.open("/designs")
+	b.do(chromedp.Evaluate[chromedp.Void](`document.querySelector(".entries tbody td.site").click()`)) // a row opens its design
+	b.wait(`location.pathname === "` + design + `" && document.readyState === "complete"`)
+	if got := b.value("/site/name"); got == "Typed into the void" {
+		t.Error("the copy is in the form before anyone asked for it")
+	}
+	b.wait(`document.getElementById("offer").textContent.includes("You typed something else here")`)
+	b.picture("copy is offered, desk")
+	b.sound()
+	b.do(chromedp.Click(chromedp.CSS("#offer button")))
+	b.wait(`document.querySelector('[name="/site/name"]').value === "Typed into the void"`)
+	s.await("what was restored is kept as a draft of the design", func() bool {
+		all, err := s.kept.DraftsOf(t.Context(), record.ID(strings.TrimPrefix(design, "/designs/")), 9)
+		return err == nil && len(all) == 1 && all[0].Fields["/site/name"] == "Typed into the void"
+	})
+	b.saves()
+	if said := b.text(".said"); said != "Saved as revision 2." {
+		t.Errorf("saving it says %q", said)
+	}
 }
 
 // TestBrowser_SavedWithoutScript goes all the ways of saved designs without script.
