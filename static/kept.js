@@ -185,9 +185,17 @@
 		if (!copy.kept) touched();
 	};
 
+	const two = (n) => String(n).padStart(2, "0");
 	const time = (at) => {
-		const then = new Date(at), clock = then.toLocaleTimeString([], { hour: "2-digit", minute: "2-digit" });
-		return then.toDateString() === new Date().toDateString() ? `at ${clock}` : `on ${then.toLocaleDateString()} at ${clock}`;
+		const then = new Date(at), clock = `at ${two(then.getHours())}:${two(then.getMinutes())}`;
+		if (then.toDateString() === new Date().toDateString()) return clock;
+		return `on ${then.getFullYear()}-${two(then.getMonth() + 1)}-${two(then.getDate())} ${clock}`;
+	};
+	// How many fields of the form a copy has another text for.
+	const differing = (copy) => {
+		const now = new FormData(form());
+		const names = new Set([...now.keys(), ...Object.keys(copy.fields)].filter((name) => name.startsWith("/")));
+		return [...names].filter((name) => (now.get(name) || "") !== (copy.fields[name] || "")).length;
 	};
 	const named = (c) => (c.title ? `“${c.title}”` : "a design without a title");
 	const button = (words, press) => {
@@ -243,10 +251,16 @@
 		if (mine && again) return;
 		sessionStorage.removeItem(tab);
 		const design = origin("design").value, draft = origin("draft").value;
-		const past = copies().filter((c) => fresh || !c.kept && (design ? c.fields.design === design : c.fields.draft === draft)).slice(0, 3);
+		const past = copies().filter((c) => differing(c) && (fresh || !c.kept && (design ? c.fields.design === design : c.fields.draft === draft))).slice(0, 3);
 		if (!past.length) return;
-		offer(...past.map((c) => [`You typed ${fresh ? named(c) : "something else"} here ${time(c.at)}. `, button("Restore it", () => restore(c).then(() => offer()))]),
-			[button(fresh ? "Forget these" : "Forget it", () => { forget((c) => past.some((p) => p.id === c.id)); offer(); })]);
+		const forgets = button(past.length > 1 ? "Forget these" : "Forget it", () => { forget((c) => past.some((p) => p.id === c.id)); offer(); });
+		const rows = past.map((c) => {
+			const n = differing(c);
+			const what = fresh ? `You typed ${named(c)} here ${time(c.at)}. ` : `In this browser alone is what you typed ${time(c.at)}; ${n} ${n > 1 ? "fields differ" : "field differs"}. `;
+			return [what, button("Restore it", () => restore(c).then(() => offer()))];
+		});
+		if (rows.length === 1) rows[0].push(" ", forgets); else rows.push([forgets]);
+		offer(...rows);
 	};
 
 	document.addEventListener("input", (e) => e.target.closest("#design") && touched());

@@ -604,7 +604,7 @@ func TestBrowser_CopyInTheBrowser(t *testing.T) {
 	if got := b.value("/site/name"); got == "Typed into the void" {
 		t.Error("the copy is in the form before anyone asked for it")
 	}
-	b.wait(`document.getElementById("offer").textContent.includes("You typed something else here")`)
+	b.wait(`document.getElementById("offer").textContent.includes("In this browser alone is what you typed at") && document.getElementById("offer").textContent.includes("1 field differs")`)
 	b.picture("copy is offered, desk")
 	b.sound()
 	b.do(chromedp.Click(chromedp.CSS("#offer button")))
