@@ -79,6 +79,7 @@ func (s *Server) showUnsaved(w http.ResponseWriter, r *http.Request, j judged, o
 	for name, value := range failure.header {
 		w.Header().Set(name, value)
 	}
+	s.learn(cause)
 	s.log.WarnContext(r.Context(), "design not saved", "request_id", visitOf(r).requestID, "status", failure.status, "error", cause)
 	p := newDesignPage(newBase("Not saved: "+titled("Design", j.form), "/design"), j, marking{})
 	p.Keeping = keeping(o, cause)

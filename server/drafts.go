@@ -30,6 +30,7 @@ func (s *Server) keep(r *http.Request, saved Saving, o origin, fields map[string
 	ctx := context.WithoutCancel(r.Context()) // a page that is being left does not wait for the answer
 	d := record.Draft{ID: o.draft, Design: o.design, Base: o.base, Fields: fields, Version: o.version}
 	kept, err := saved.SaveDraft(ctx, actorOf(r), d)
+	s.learn(err)
 	_, stale := errors.AsType[*record.StaleError](err)
 	gone := errors.Is(err, record.ErrNotFound) && o.version > 0
 	if !stale && !gone {

@@ -90,6 +90,7 @@ func describe(err error, forProgram bool) *statusError {
 // status, logs the error and shows the visitor a message and the request's id. The
 // text of an error that was not meant for visitors stays in the log.
 func (s *Server) serveError(w http.ResponseWriter, r *http.Request, err error) {
+	s.learn(err)
 	forProgram := strings.HasPrefix(r.URL.Path, "/api/")
 	f := describe(err, forProgram)
 	id := visitOf(r).requestID

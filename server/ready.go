@@ -55,6 +55,13 @@ func (s *Server) savingWorks(ctx context.Context) error {
 	return err
 }
 
+// learn takes from the error of a save that saving does not work any more.
+func (s *Server) learn(err error) {
+	if errors.Is(err, record.ErrUnavailable) {
+		s.savingWorkedAt.Store(0)
+	}
+}
+
 // worksFor is how long an answer that saving works is taken for the next pages' too.
 const worksFor = 200 * time.Millisecond
 
